@@ -218,6 +218,9 @@ func TestCasesAreComplete(t *testing.T) {
 			t.Errorf("case %q: every case needs an id of its own, a story and a named model", c.ID)
 		}
 		seen[c.ID] = true
+		if err := c.Model.Validate(); err != nil {
+			t.Errorf("case %s: %v", c.ID, err)
+		}
 	}
 	for _, id := range []string{"grid-cones", "grid-matrix", "pulses", "sidelobes", "ferries"} {
 		if !seen[id] {

@@ -94,6 +94,9 @@ func TestBalanceIsKirchhoffsLaw(t *testing.T) {
 			if err != nil {
 				t.Fatal(err)
 			}
+			if err := m.Validate(); err != nil {
+				t.Fatalf("%v: %v", relaxation, err)
+			}
 			x := operatingPoint(t, m, n, v, power)
 			balances, ratings := 0, 0
 			for _, c := range m.Constraints {
