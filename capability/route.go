@@ -15,6 +15,7 @@ type Route struct {
 	Load      Load
 	Toll      Toll
 	Exactness Exactness
+	Proven    bool // cheapest under the sheet's toll, not only the best found
 }
 
 // Native reports whether no bridge is crossed.
