@@ -1,0 +1,139 @@
+package interior
+
+import (
+	"context"
+	"math"
+	"time"
+
+	"towpath/backends"
+)
+
+// ending says how an iteration ended.
+type ending uint8
+
+const (
+	endOptimal ending = iota
+	endInfeasible
+	endUnbounded
+	endStuck   // no further progress, or the iteration limit
+	endStopped // the context ended
+)
+
+const (
+	defaultTolerance  = 1e-9
+	defaultIterations = 200
+	// certificates are judged at this residual; looser ones are taken only when the iteration is stuck anyway
+	looseCertificate = 1e-6
+	// A certificate's residual times its size stays near rounding for an infeasible model and of order one for a weakly
+	// infeasible one, whose certificates get better only by growing.
+	certificateProduct = 1e-5
+	stepFraction       = 0.99
+	leastStep          = 1e-9
+	leastCentering     = 1e-8
+)
+
+// run iterates until the standard form shows one of its ends, and returns the iterate that shows it. Mehrotra's
+// predictor-corrector (1992) on the embedding, one step length for all variables.
+func (f *form) run(ctx context.Context, o backends.Options) (end ending, last *state, m measure, iterations int) {
+	began := time.Now()
+	tolerance, limit := o.Tolerance, o.MaxIterations
+	if tolerance == 0 {
+		tolerance = defaultTolerance
+	}
+	if limit == 0 {
+		limit = defaultIterations
+	}
+	s := f.initial()
+	v := &newton{f: f, k: newKKT(f)}
+	best, bestM := s.clone(), measure{primal: math.Inf(1)}
+	var proof *state // best certificate so far
+	var proofM measure
+	proofResidual, proofEnd := math.Inf(1), endStuck
+	stop := func(end ending, iterations int) (ending, *state, measure, int) {
+		if proofResidual <= looseCertificate && bestM.worst() > looseCertificate && end == endStuck {
+			return proofEnd, proof, proofM, iterations
+		}
+		return end, best, bestM, iterations
+	}
+	step := 0.0
+	for iter := 0; ; iter++ {
+		r := f.residuals(s)
+		m := f.measure(s, r)
+		if o.Progress != nil {
+			o.Progress(backends.Progress{Iteration: iter, Primal: m.primalValue + f.constant, Dual: m.dualValue + f.constant, Gap: m.gap,
+				PrimalResidual: m.primal, DualResidual: m.dual, Step: step, Elapsed: time.Since(began)})
+		}
+		if m.worst() < bestM.worst() {
+			best, bestM = s.clone(), m
+		}
+		if m.worst() <= tolerance {
+			return endOptimal, s, m, iter
+		}
+		if m.infeasible < proofResidual && m.infeasible*(1+m.ySize) <= certificateProduct {
+			proof, proofM, proofResidual, proofEnd = s.clone(), m, m.infeasible, endInfeasible
+		}
+		if m.unbounded < proofResidual && m.unbounded*(1+m.xSize) <= certificateProduct {
+			proof, proofM, proofResidual, proofEnd = s.clone(), m, m.unbounded, endUnbounded
+		}
+		if proofResidual <= tolerance {
+			return proofEnd, proof, proofM, iter
+		}
+		if ctx.Err() != nil {
+			return stop(endStopped, iter)
+		}
+		if iter == limit || !f.scale(s) || !v.prepare(s) {
+			return stop(endStuck, iter)
+		}
+		d := v.predictCorrect(r)
+		step = min(1, stepFraction*f.step(s, d, 1/stepFraction))
+		if !(step >= leastStep) {
+			return stop(endStuck, iter)
+		}
+		s.move(d, step)
+		if t := max(s.tau, s.kappa); t > 1e3 || t < 1e-3 {
+			s.times(1 / t)
+		}
+	}
+}
+
+// scale takes the scalings of all cones.
+func (f *form) scale(s *state) (ok bool) {
+	for i, it := range f.items {
+		if !it.scale(s.p[i], s.q[i]) {
+			return false
+		}
+	}
+	return true
+}
+
+// predictCorrect finds the direction of one iteration.
+func (v *newton) predictCorrect(r *residuals) *direction {
+	f, s := v.f, v.s
+	mu := f.mu(s)
+	pair := make([][]float64, len(f.items))
+	for i, it := range f.items {
+		pair[i] = make([]float64, it.dim())
+		it.corrector(pair[i], 0, nil, nil)
+	}
+	affine := v.solve(r, 1, pair, -s.tau*s.kappa)
+	alpha := f.step(s, affine, 1)
+	sigma := max(math.Pow(1-alpha, 3), leastCentering)
+	for i, it := range f.items {
+		it.corrector(pair[i], sigma*mu, affine.p[i], affine.q[i])
+	}
+	return v.solve(r, 1-sigma, pair, sigma*mu-s.tau*s.kappa-affine.tau*affine.kappa)
+}
+
+// step is the largest common step, at most limit.
+func (f *form) step(s *state, d *direction, limit float64) float64 {
+	if d.tau < 0 {
+		limit = min(limit, -s.tau/d.tau)
+	}
+	if d.kappa < 0 {
+		limit = min(limit, -s.kappa/d.kappa)
+	}
+	for i, it := range f.items {
+		limit = it.step(s.p[i], d.p[i], s.q[i], d.q[i], limit)
+	}
+	return limit
+}

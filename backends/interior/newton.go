@@ -1,0 +1,226 @@
+package interior
+
+import "math"
+
+// newton solves for directions at one iterate.
+type newton struct {
+	f *form
+	s *state
+	k *kkt
+	// response to one unit of tau
+	x    []float64
+	p, q [][]float64
+	den  float64
+}
+
+// direction is a step in everything.
+type direction struct {
+	x          []float64
+	p, q       [][]float64
+	tau, kappa float64
+}
+
+// side is a right-hand side of the Newton system, or what an approximate solution leaves of one.
+type side struct {
+	x          []float64   // A dP + B du - b dtau;  c_u dtau - B'dy - F'dQ
+	item       [][]float64 // blocks: c dtau - A'dy - dQ;  maps: F du + f dtau - dP
+	pair       [][]float64 // dP + H dQ
+	gap, kappa float64     // b'dy - c_u'du - c'dP - f'dQ - dkappa;  kappa dtau + tau dkappa
+}
+
+// prepare factors the reduced system at the state's scalings and finds the response to tau.
+func (v *newton) prepare(s *state) (ok bool) {
+	f := v.f
+	v.s = s
+	if !v.k.build() {
+		return false
+	}
+	g := make([]float64, f.rows+f.free)
+	copy(g, f.b)
+	copy(g[f.rows:], f.cu)
+	for _, it := range f.items {
+		h := make([]float64, it.dim())
+		it.apply(h, it.offset, !it.isBlock)
+		it.back(g, h, 1)
+	}
+	v.x = v.k.solve(g)
+	v.p, v.q = nil, nil
+	v.den = dot(f.b, v.x[:f.rows]) - dot(f.cu, v.x[f.rows:]) + s.kappa/s.tau
+	for _, it := range f.items {
+		p, q := make([]float64, it.dim()), make([]float64, it.dim())
+		if it.isBlock { // dQ = c dtau - A'dy, dP = -H dQ
+			copy(q, it.offset)
+			it.forward(q, v.x, -1)
+			it.apply(p, q, false)
+			negate(p)
+			v.den -= dot(it.offset, p)
+		} else { // dP = F du + f dtau, dQ = -H^-1 dP
+			copy(p, it.offset)
+			it.forward(p, v.x, 1)
+			it.apply(q, p, true)
+			negate(q)
+			v.den -= dot(it.offset, q)
+		}
+		v.p, v.q = append(v.p, p), append(v.q, q)
+	}
+	return true
+}
+
+// rounds bounds the refinement of the whole system.
+const rounds = 6
+
+// solve gives the direction that removes the fraction eta of the residuals. The whole system is refined, not only its
+// reduced form: dQ = H^-1 (...) loses digits near the boundary that F'dQ then misses.
+func (v *newton) solve(r *residuals, eta float64, pair [][]float64, kappa float64) *direction {
+	e := &side{x: scaled(r.x, -eta), pair: pair, gap: -eta * r.gap, kappa: kappa}
+	for _, t := range r.item {
+		e.item = append(e.item, scaled(t, -eta))
+	}
+	best := v.once(e)
+	left := v.left(e, best)
+	for range rounds {
+		if left.size() <= 1e-16 {
+			break
+		}
+		next := best.plus(v.once(left))
+		after := v.left(e, next)
+		if !(after.size() < left.size()) {
+			break
+		}
+		gained := after.size() < 0.5*left.size()
+		best, left = next, after
+		if !gained {
+			break
+		}
+	}
+	return best
+}
+
+func scaled(x []float64, f float64) []float64 {
+	out := make([]float64, len(x))
+	for i, v := range x {
+		out[i] = f * v
+	}
+	return out
+}
+
+// size measures what is left of the linear equations; pairs are left out, their rows are of very different sizes.
+func (e *side) size() float64 {
+	n := math.Hypot(norm(e.x), e.gap)
+	for _, t := range e.item {
+		n = math.Hypot(n, norm(t))
+	}
+	return n
+}
+
+func (d *direction) plus(c *direction) *direction {
+	sum := func(a, b []float64) []float64 {
+		out := make([]float64, len(a))
+		for i := range out {
+			out[i] = a[i] + b[i]
+		}
+		return out
+	}
+	out := &direction{x: sum(d.x, c.x), tau: d.tau + c.tau, kappa: d.kappa + c.kappa}
+	for i := range d.p {
+		out.p, out.q = append(out.p, sum(d.p[i], c.p[i])), append(out.q, sum(d.q[i], c.q[i]))
+	}
+	return out
+}
+
+// left returns the right-hand side minus what the direction achieves.
+func (v *newton) left(e *side, d *direction) *side {
+	f := v.f
+	n := f.rows
+	l := &side{x: append([]float64(nil), e.x...), gap: e.gap, kappa: e.kappa - v.s.kappa*d.tau - v.s.tau*d.kappa}
+	y, u := d.x[:n], d.x[n:]
+	for k := range f.bu {
+		l.x[k] += f.b[k]*d.tau - f.bu[k].dot(u)
+		f.bu[k].addTo(l.x[n:], y[k])
+	}
+	for k := range f.cu {
+		l.x[n+k] -= f.cu[k] * d.tau
+	}
+	l.gap -= dot(f.b, y) - dot(f.cu, u) - d.kappa
+	for i, it := range f.items {
+		t, h := append([]float64(nil), e.item[i]...), make([]float64, it.dim())
+		other, priced := d.q[i], d.p[i]
+		if it.isBlock {
+			it.back(l.x, d.p[i], -1)
+			it.forward(t, d.x, 1)
+		} else {
+			it.back(l.x, d.q[i], 1)
+			it.forward(t, d.x, -1)
+			other, priced = d.p[i], d.q[i]
+		}
+		l.gap += dot(it.offset, priced)
+		it.apply(h, d.q[i], false)
+		for k := range t {
+			t[k] += other[k] - it.offset[k]*d.tau
+			h[k] = e.pair[i][k] - d.p[i][k] - h[k]
+		}
+		l.item, l.pair = append(l.item, t), append(l.pair, h)
+	}
+	return l
+}
+
+// once solves the Newton system by elimination down to the reduced unknowns.
+func (v *newton) once(e *side) *direction {
+	f, s := v.f, v.s
+	d := &direction{}
+	g := append([]float64(nil), e.x...)
+	negate(g[f.rows:])
+	for i, it := range f.items {
+		t, h := append([]float64(nil), e.item[i]...), make([]float64, it.dim())
+		if it.isBlock { // -A (pair + H item)
+			it.apply(h, t, false)
+			for k := range h {
+				h[k] += e.pair[i][k]
+			}
+		} else { // -F' H^-1 (pair + item)
+			for k := range t {
+				t[k] += e.pair[i][k]
+			}
+			it.apply(h, t, true)
+		}
+		it.back(g, h, -1)
+	}
+	d.x = v.k.solve(g)
+	num := e.gap + e.kappa/s.tau - dot(f.b, d.x[:f.rows]) + dot(f.cu, d.x[f.rows:])
+	for i, it := range f.items {
+		p, q := make([]float64, it.dim()), make([]float64, it.dim())
+		if it.isBlock {
+			it.forward(q, d.x, -1)
+			for k := range q {
+				q[k] -= e.item[i][k]
+			}
+			it.apply(p, q, false)
+			for k := range p {
+				p[k] = e.pair[i][k] - p[k]
+			}
+			num += dot(it.offset, p)
+		} else {
+			it.forward(p, d.x, 1)
+			t := make([]float64, it.dim())
+			for k := range t {
+				p[k] -= e.item[i][k]
+				t[k] = e.pair[i][k] - p[k]
+			}
+			it.apply(q, t, true)
+			num += dot(it.offset, q)
+		}
+		d.p, d.q = append(d.p, p), append(d.q, q)
+	}
+	d.tau = num / v.den
+	d.kappa = (e.kappa - s.kappa*d.tau) / s.tau
+	for i := range d.x {
+		d.x[i] += d.tau * v.x[i]
+	}
+	for i := range d.p {
+		for k := range d.p[i] {
+			d.p[i][k] += d.tau * v.p[i][k]
+			d.q[i][k] += d.tau * v.q[i][k]
+		}
+	}
+	return d
+}
