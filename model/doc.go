@@ -21,7 +21,8 @@
 //
 // Rows of real and symmetric maps, the diagonal rows of Hermitian maps, and the head rows of complex lorentz
 // (one) and rotated lorentz (two) maps are real: they mean the real part of what their coefficients say. On a
-// complex entry a coefficient a+bi therefore contributes a Re(x) - b Im(x).
+// complex entry a coefficient a+bi therefore contributes a Re(x) - b Im(x). Where a real row meets a real entry, and in
+// the constants of real rows, an imaginary part of rounding size is ignored and a larger one is a fault.
 //
 // # Inner products
 //
@@ -46,7 +47,9 @@
 //
 // The dual objective of a minimization, a lower bound on it where the multipliers are exact, is
 //
-//	constant - sum_k <y_k, F_k(0)> + sum over range rows and bounds of (lower y^+ - upper y^-).
+//	constant - sum_k <y_k, F_k(0)> + sum over range rows and bounds of (lower y^+ - upper y^-),
+//
+// where bounds of off-diagonal entries of matrices count twice, as in <z_b, x_b>.
 //
 // # Certificates
 //

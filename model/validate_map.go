@@ -114,7 +114,7 @@ func (v *validator) row(path, place string, c *Constraint, r int) {
 		v.fault(path+".map.const", at, fmt.Sprintf("the constant is %v", x), "send finite numbers")
 		return
 	}
-	if realRow && imag(x) != 0 {
+	if realRow && !rounding(x) {
 		what := "the row is real and its constant has an imaginary part"
 		if f.Field == Hermitian {
 			what = "the row is on the diagonal of a Hermitian matrix and its constant has an imaginary part"
