@@ -13,6 +13,8 @@ func newDifference() Bridge {
 	return difference{rule{"free/difference", blockKind(model.Real, model.Free), "every number is a difference of two nonnegative ones"}}
 }
 
+func (difference) LastResort() bool { return true }
+
 func (difference) Yields(n int) ([]capability.Demand, bool) {
 	return sizes{}.and(blockKind(model.Real, model.Nonneg), 2*n), true
 }

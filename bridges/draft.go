@@ -117,22 +117,18 @@ func (d *draft) lower(it item, b Bridge) ([]item, error) {
 	for _, nb := range low.Blocks {
 		made = append(made, item{capability.OnBlock, d.addBlock(nb, nil)})
 	}
-	name := ""
 	switch it.place {
 	case capability.OnMap:
-		name = d.maps[it.number].c.Name
 		d.maps[it.number].gone = true
 	case capability.OnBounds:
-		name = d.blocks[it.number].block.Name
 		d.blocks[it.number].bounds = nil
 	case capability.OnBlock:
 		old := &d.blocks[it.number]
-		name = old.block.Name
 		old.gone, old.values, old.next = true, low.Values, first
 	}
 	for i := range low.Constraints {
 		made = append(made, item{capability.OnMap, len(d.maps)})
-		d.maps = append(d.maps, draftMap{c: d.image(it, &low.Constraints[i], first, name)})
+		d.maps = append(d.maps, draftMap{c: d.image(it, &low.Constraints[i], first)})
 	}
 	if it.place == capability.OnMap { // its coefficients live on in the images; only its shape is still needed
 		old := &d.maps[it.number].c
@@ -142,9 +138,10 @@ func (d *draft) lower(it item, b Bridge) ([]item, error) {
 	return made, nil
 }
 
-// image writes one new constraint over the draft's columns; first is the first column of the new blocks.
-func (d *draft) image(it item, im *Image, first int, name string) model.Constraint {
-	c := model.Constraint{Name: name, Cone: im.Cone, Map: model.Map{Field: im.Field}}
+// image writes one new constraint over the draft's columns; first is the first column of the new blocks. It has no name:
+// names belong to the client's model.
+func (d *draft) image(it item, im *Image, first int) model.Constraint {
+	c := model.Constraint{Cone: im.Cone, Map: model.Map{Field: im.Field}}
 	shape := im.shape()
 	var old *model.Constraint
 	start := 0

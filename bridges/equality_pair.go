@@ -17,6 +17,8 @@ func newEqualityPair() Bridge {
 	return equalityPair{rule{"zero/pair", mapKind(model.Real, model.Zero), "definition of equality"}}
 }
 
+func (equalityPair) LastResort() bool { return true }
+
 func (equalityPair) Yields(n int) ([]capability.Demand, bool) {
 	return sizes{}.and(mapKind(model.Real, model.Nonneg), 2*n), true
 }

@@ -17,6 +17,7 @@ func (r rule) From() capability.Kind           { return r.from }
 func (r rule) Source() string                  { return r.source }
 func (r rule) Exactness() capability.Exactness { return capability.Exact }
 func (r rule) Lifts() capability.Lifts         { return capability.LiftsAll }
+func (r rule) LastResort() bool                { return false }
 
 func blockKind(f model.Field, c model.ConeKind) capability.Kind {
 	return capability.Kind{Place: capability.OnBlock, Field: f, Cone: c}

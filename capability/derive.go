@@ -45,13 +45,14 @@ func (s *deriver) derive(n node, path []node) []derivation {
 	}
 	var all []derivation
 	demand := Demand{Kind: n.kind, Size: n.size, Count: 1}
-	if limit, ok := s.sheet.Takes[n.kind]; ok && (limit == 0 || n.size <= limit) {
+	limit, native := s.sheet.Takes[n.kind]
+	if native = native && (limit == 0 || n.size <= limit); native {
 		all = append(all, derivation{leg: Leg{Demand: demand}, load: map[node]int{n: 1}})
 	}
 	path = append(path[:len(path):len(path)], n)
 	for _, r := range s.byFrom[n.kind] {
 		parts, ok := r.Yields(n.size)
-		if !ok {
+		if !ok || native && r.LastResort() {
 			continue
 		}
 		ways := []derivation{{leg: Leg{Demand: demand, Bridge: r.ID()}, load: map[node]int{}, crossings: 1, name: r.ID(), exactness: r.Exactness()}}

@@ -32,6 +32,9 @@ type Rule interface {
 	Yields(size int) (parts []Demand, ok bool)
 	Exactness() Exactness
 	Lifts() Lifts
+	// LastResort marks a bridge that is valid but takes the interior away from a model or its uniqueness, which no toll
+	// of sizes sees. It is crossed only where the sheet does not take From natively.
+	LastResort() bool
 }
 
 // Load is what a route asks of a sheet in the end: the total of every native kind and size, sorted by kind and
