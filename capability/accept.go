@@ -1,7 +1,10 @@
 package capability
 
 import (
+	"cmp"
 	"fmt"
+	"maps"
+	"slices"
 
 	"towpath/model"
 )
@@ -18,4 +21,9 @@ func (s *Sheet) Accepts(m *model.Model) error {
 		}
 	}
 	return nil
+}
+
+// Kinds lists what the sheet takes natively, sorted by name.
+func (s *Sheet) Kinds() []Kind {
+	return slices.SortedFunc(maps.Keys(s.Takes), func(a, b Kind) int { return cmp.Compare(a.String(), b.String()) })
 }

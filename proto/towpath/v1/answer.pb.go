@@ -697,6 +697,10 @@ type Examination struct {
 	CertificateResidual *float64 `protobuf:"fixed64,9,opt,name=certificate_residual,json=certificateResidual,proto3,oneof" json:"certificate_residual,omitempty"`
 	// A certificate of infeasibility with this residual rules out every point of smaller norm.
 	CertificateRadius *float64 `protobuf:"fixed64,10,opt,name=certificate_radius,json=certificateRadius,proto3,oneof" json:"certificate_radius,omitempty"`
+	// What the violations could be worth, relative to the objective: large where multipliers or points run off to infinity.
+	Price *float64 `protobuf:"fixed64,13,opt,name=price,proto3,oneof" json:"price,omitempty"`
+	// Size of a certificate scaled to value 1.
+	CertificateSize *float64 `protobuf:"fixed64,14,opt,name=certificate_size,json=certificateSize,proto3,oneof" json:"certificate_size,omitempty"`
 	// By constraint.
 	Constraints []*ConstraintResiduals `protobuf:"bytes,11,rep,name=constraints,proto3" json:"constraints,omitempty"`
 	// By block.
@@ -801,6 +805,20 @@ func (x *Examination) GetCertificateResidual() float64 {
 func (x *Examination) GetCertificateRadius() float64 {
 	if x != nil && x.CertificateRadius != nil {
 		return *x.CertificateRadius
+	}
+	return 0
+}
+
+func (x *Examination) GetPrice() float64 {
+	if x != nil && x.Price != nil {
+		return *x.Price
+	}
+	return 0
+}
+
+func (x *Examination) GetCertificateSize() float64 {
+	if x != nil && x.CertificateSize != nil {
+		return *x.CertificateSize
 	}
 	return 0
 }
@@ -1108,7 +1126,7 @@ const file_towpath_v1_answer_proto_rawDesc = "" +
 	"\fstationarity\x18\x05 \x01(\x01H\x00R\fstationarity\x88\x01\x01\x124\n" +
 	"\x13smallest_eigenvalue\x18\x06 \x01(\x01H\x01R\x12smallestEigenvalue\x88\x01\x01B\x0f\n" +
 	"\r_stationarityB\x16\n" +
-	"\x14_smallest_eigenvalue\"\xb9\x05\n" +
+	"\x14_smallest_eigenvalue\"\xa3\x06\n" +
 	"\vExamination\x12-\n" +
 	"\averdict\x18\x01 \x01(\x0e2\x13.towpath.v1.VerdictR\averdict\x12\x18\n" +
 	"\areasons\x18\x02 \x03(\tR\areasons\x12!\n" +
@@ -1120,7 +1138,9 @@ const file_towpath_v1_answer_proto_rawDesc = "" +
 	"\x0fcomplementarity\x18\b \x01(\x01H\x05R\x0fcomplementarity\x88\x01\x01\x126\n" +
 	"\x14certificate_residual\x18\t \x01(\x01H\x06R\x13certificateResidual\x88\x01\x01\x122\n" +
 	"\x12certificate_radius\x18\n" +
-	" \x01(\x01H\aR\x11certificateRadius\x88\x01\x01\x12A\n" +
+	" \x01(\x01H\aR\x11certificateRadius\x88\x01\x01\x12\x19\n" +
+	"\x05price\x18\r \x01(\x01H\bR\x05price\x88\x01\x01\x12.\n" +
+	"\x10certificate_size\x18\x0e \x01(\x01H\tR\x0fcertificateSize\x88\x01\x01\x12A\n" +
 	"\vconstraints\x18\v \x03(\v2\x1f.towpath.v1.ConstraintResidualsR\vconstraints\x122\n" +
 	"\x06blocks\x18\f \x03(\v2\x1a.towpath.v1.BlockResidualsR\x06blocksB\f\n" +
 	"\n" +
@@ -1131,7 +1151,9 @@ const file_towpath_v1_answer_proto_rawDesc = "" +
 	"\x0e_dual_residualB\x12\n" +
 	"\x10_complementarityB\x17\n" +
 	"\x15_certificate_residualB\x15\n" +
-	"\x13_certificate_radius\"\xc3\x02\n" +
+	"\x13_certificate_radiusB\b\n" +
+	"\x06_priceB\x13\n" +
+	"\x11_certificate_size\"\xc3\x02\n" +
 	"\aTimings\x121\n" +
 	"\x06waited\x18\x01 \x01(\v2\x19.google.protobuf.DurationR\x06waited\x123\n" +
 	"\aplanned\x18\x02 \x01(\v2\x19.google.protobuf.DurationR\aplanned\x123\n" +
