@@ -1,0 +1,113 @@
+package broker
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"time"
+
+	"towpath/broker/store"
+	"towpath/broker/wire"
+	"towpath/model"
+
+	"google.golang.org/genproto/googleapis/rpc/errdetails"
+	"google.golang.org/grpc/codes"
+	"google.golang.org/grpc/status"
+	"google.golang.org/protobuf/protoadapt"
+	"google.golang.org/protobuf/types/known/durationpb"
+)
+
+// Reason is a stable word for programs: what went wrong.
+type Reason string
+
+// All reasons, of refused calls and of ended jobs.
+const (
+	ModelInvalid     Reason = "MODEL_INVALID"      // the model has faults
+	RequestInvalid   Reason = "REQUEST_INVALID"    // the request has
+	UploadBroken     Reason = "UPLOAD_BROKEN"      // a stream does not follow the contract
+	ModelTooLarge    Reason = "MODEL_TOO_LARGE"    // over a limit of this server
+	NoRoute          Reason = "NO_ROUTE"           // no back end can take the model
+	UnknownSheet     Reason = "UNKNOWN_SHEET"      // the job names a sheet or back end that is not there
+	UnknownJob       Reason = "UNKNOWN_JOB"        // no such job, or no longer
+	UnknownModel     Reason = "UNKNOWN_MODEL"      // no such uploaded model, or no longer
+	NoAnswer         Reason = "NO_ANSWER"          // the job has no answer
+	RequestIDReused  Reason = "REQUEST_ID_REUSED"  // the same request_id with another request
+	QueueFull        Reason = "QUEUE_FULL"         // too many jobs wait
+	StoreFull        Reason = "STORE_FULL"         // no room for the model
+	Draining         Reason = "DRAINING"           // the server is stopping
+	BackendFailed    Reason = "BACKEND_FAILED"     // no back end could run
+	RunLimitReached  Reason = "RUN_LIMIT_REACHED"  // of the solve
+	LifeLimitReached Reason = "LIFE_LIMIT_REACHED" // of the job
+	Withdrawn        Reason = "WITHDRAWN"          // by a client
+	Internal         Reason = "INTERNAL"           // a bug of ours
+)
+
+// domain names this service in error details.
+const domain = "towpath"
+
+// refusal is an error with all that a client is told of it.
+type refusal struct {
+	code   codes.Code
+	reason Reason
+	text   string
+	faults []model.Fault
+	retry  time.Duration // 0: do not
+}
+
+func (r *refusal) Error() string { return r.text }
+
+func refuse(code codes.Code, reason Reason, format string, a ...any) *refusal {
+	return &refusal{code: code, reason: reason, text: fmt.Sprintf(format, a...)}
+}
+
+// shownFaults keeps error details within what HTTP/2 trailers usually carry.
+const shownFaults = 20
+
+// GRPCStatus makes the status that goes out: ErrorInfo always, BadRequest for faults, RetryInfo where a retry makes sense.
+func (r *refusal) GRPCStatus() *status.Status {
+	details := []protoadapt.MessageV1{&errdetails.ErrorInfo{Reason: string(r.reason), Domain: domain}}
+	if len(r.faults) > 0 {
+		bad := &errdetails.BadRequest{}
+		for _, f := range r.faults[:min(len(r.faults), shownFaults)] {
+			bad.FieldViolations = append(bad.FieldViolations, &errdetails.BadRequest_FieldViolation{Field: f.Path, Description: f.String()})
+		}
+		details = append(details, bad)
+	}
+	if r.retry > 0 {
+		details = append(details, &errdetails.RetryInfo{RetryDelay: durationpb.New(r.retry)})
+	}
+	s := status.New(r.code, r.text)
+	if with, err := s.WithDetails(details...); err == nil {
+		return with
+	}
+	return s
+}
+
+// statusOf turns any error into what goes out. Codes are chosen here and nowhere else.
+func statusOf(err error) error {
+	var r *refusal
+	var faults *model.FaultError
+	var large *wire.TooLargeError
+	switch {
+	case err == nil:
+		return nil
+	case errors.As(err, &r):
+		return r.GRPCStatus().Err()
+	case errors.As(err, &faults):
+		return (&refusal{code: codes.InvalidArgument, reason: ModelInvalid, text: faults.Error(), faults: faults.Faults}).GRPCStatus().Err()
+	case errors.As(err, &large):
+		return refuse(codes.ResourceExhausted, ModelTooLarge, "%v", large).GRPCStatus().Err()
+	case errors.Is(err, store.ErrFull):
+		full := refuse(codes.ResourceExhausted, StoreFull, "there is no room for another model or answer; try later")
+		full.retry = 30 * time.Second
+		return full.GRPCStatus().Err()
+	case errors.Is(err, context.Canceled):
+		return status.Error(codes.Canceled, "the caller went away")
+	case errors.Is(err, context.DeadlineExceeded):
+		return status.Error(codes.DeadlineExceeded, "the caller's deadline passed; the job goes on")
+	}
+	if s, ok := status.FromError(err); ok {
+		return s.Err()
+	}
+	return refuse(codes.Internal, Internal, "internal fault: %v", err).GRPCStatus().Err()
+}

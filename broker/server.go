@@ -1,0 +1,104 @@
+package broker
+
+import (
+	"context"
+	"net"
+	"runtime/debug"
+	"time"
+
+	towpathv1 "towpath/proto/towpath/v1"
+
+	"go.uber.org/zap"
+	"google.golang.org/grpc"
+	"google.golang.org/grpc/codes"
+	"google.golang.org/grpc/credentials/insecure"
+	"google.golang.org/grpc/health"
+	"google.golang.org/grpc/health/grpc_health_v1"
+	"google.golang.org/grpc/keepalive"
+	"google.golang.org/grpc/reflection"
+	"google.golang.org/grpc/test/bufconn"
+)
+
+// Server serves a broker over gRPC, with the standard health service and reflection.
+type Server struct {
+	broker *Broker
+	grpc   *grpc.Server
+	health *health.Server
+}
+
+// Keepalive: clients may ask every 20 s, not more often; idle connections are asked after a minute.
+const (
+	leastPing   = 20 * time.Second
+	pingAfter   = time.Minute
+	pingTimeout = 20 * time.Second
+	// closing bounds how long open calls may take to end when the server stops.
+	closing = 5 * time.Second
+)
+
+// NewServer assembles the services of a broker. Messages keep gRPC's limit of 4 MiB: larger models come in chunks.
+func NewServer(b *Broker) *Server {
+	s := &Server{broker: b, health: health.NewServer()}
+	s.grpc = grpc.NewServer(
+		grpc.KeepaliveEnforcementPolicy(keepalive.EnforcementPolicy{MinTime: leastPing}),
+		grpc.KeepaliveParams(keepalive.ServerParameters{Time: pingAfter, Timeout: pingTimeout}),
+		grpc.ChainUnaryInterceptor(s.recoverUnary),
+		grpc.ChainStreamInterceptor(s.recoverStream),
+	)
+	towpathv1.RegisterJobServiceServer(s.grpc, &jobService{b: b})
+	towpathv1.RegisterRouteServiceServer(s.grpc, &routeService{b: b})
+	grpc_health_v1.RegisterHealthServer(s.grpc, s.health)
+	for name := range s.grpc.GetServiceInfo() {
+		s.health.SetServingStatus(name, grpc_health_v1.HealthCheckResponse_SERVING)
+	}
+	reflection.Register(s.grpc)
+	return s
+}
+
+// Serve answers on the listener until Stop.
+func (s *Server) Serve(l net.Listener) error { return s.grpc.Serve(l) }
+
+// Stop drains: health says NOT_SERVING, the broker drains, calls get a while to end. It may be called more than once.
+func (s *Server) Stop() {
+	s.health.Shutdown()
+	s.broker.Stop()
+	hard := time.AfterFunc(closing, s.grpc.Stop)
+	defer hard.Stop()
+	s.grpc.GracefulStop()
+}
+
+// contained turns a panic of a handler into an internal fault: one request must not end the others.
+func (s *Server) contained(method string, err *error) {
+	if x := recover(); x != nil {
+		s.broker.log.Error("handler panicked", zap.String("method", method), zap.Any("panic", x), zap.ByteString("stack", debug.Stack()))
+		*err = refuse(codes.Internal, Internal, "internal fault; please report it").GRPCStatus().Err()
+	}
+}
+
+func (s *Server) recoverUnary(ctx context.Context, q any, info *grpc.UnaryServerInfo, handle grpc.UnaryHandler) (out any, err error) {
+	defer s.contained(info.FullMethod, &err)
+	return handle(ctx, q)
+}
+
+func (s *Server) recoverStream(srv any, stream grpc.ServerStream, info *grpc.StreamServerInfo, handle grpc.StreamHandler) (err error) {
+	defer s.contained(info.FullMethod, &err)
+	return handle(srv, stream)
+}
+
+// Embed serves the broker inside this process and returns a connection to it, real gRPC without a network. close stops
+// both.
+func (s *Server) Embed() (conn *grpc.ClientConn, close func(), err error) {
+	const buffer = 1 << 20
+	l := bufconn.Listen(buffer)
+	go func() { _ = s.Serve(l) }() // ends with Stop, with nothing to say
+	conn, err = grpc.NewClient("passthrough:embedded",
+		grpc.WithContextDialer(func(ctx context.Context, _ string) (net.Conn, error) { return l.DialContext(ctx) }),
+		grpc.WithTransportCredentials(insecure.NewCredentials()))
+	if err != nil {
+		s.Stop()
+		return nil, nil, err
+	}
+	return conn, func() {
+		_ = conn.Close()
+		s.Stop()
+	}, nil
+}
