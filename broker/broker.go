@@ -19,7 +19,7 @@ type Absent struct {
 	Cure    string // what would help, like "install the Debian package coinor-csdp"
 }
 
-// Broker is the service over one store. Start it, serve it, stop it; stopping twice is fine.
+// Broker is the service over one store. Serve it with NewServer; Stop it, twice if you like.
 type Broker struct {
 	cfg     Config
 	planner *planner
@@ -28,17 +28,18 @@ type Broker struct {
 	records store.Records
 	blobs   store.Blobs
 
-	mu      sync.Mutex
-	work    *sync.Cond           // the queue has grown, or the broker drains
-	queue   []string             // jobs waiting, oldest first
-	live    map[string]*liveJob  // every job in the store
-	ended   []string             // of these, the ended ones, oldest first
-	models  map[string]*modelUse // every model in the store
-	running int
-	drains  bool
+	mu        sync.Mutex
+	work      *sync.Cond           // the queue has grown, or the broker drains
+	queue     []string             // jobs waiting, oldest first
+	live      map[string]*liveJob  // every job in the store
+	ended     []string             // of these, the ended ones, oldest first
+	models    map[string]*modelUse // every model in the store
+	uploading int64                // bytes of uploads in progress
+	drains    bool
 
 	drained chan struct{} // closed when streams should end
 	workers sync.WaitGroup
+	janitor sync.WaitGroup
 	stop    context.CancelFunc // of everything that runs
 	ctx     context.Context
 	once    sync.Once
@@ -54,13 +55,7 @@ type liveJob struct {
 	done    chan struct{} // closed when it has ended
 }
 
-// modelUse counts what keeps a model in the store.
-type modelUse struct {
-	jobs  int
-	until time.Time // kept without jobs
-}
-
-// New makes a broker over an empty in-memory store and starts its workers.
+// New makes a broker over an empty in-memory store and starts its workers. It keeps drivers, absent and the logger.
 func New(cfg Config, drivers []backends.Driver, absent []Absent, log *zap.Logger) (*Broker, error) {
 	if err := cfg.validate(); err != nil {
 		return nil, err
@@ -83,56 +78,83 @@ func New(cfg Config, drivers []backends.Driver, absent []Absent, log *zap.Logger
 	for _, a := range absent {
 		log.Warn("back end absent", zap.String("backend", a.Backend), zap.String("cure", a.Cure))
 	}
+	log.Info("broker started", zap.Int("workers", cfg.Workers), zap.Int("queue_limit", cfg.QueueLimit), zap.Int("retain", cfg.Retain),
+		zap.Int64("store_limit_bytes", cfg.StoreLimit), zap.Uint64("memory_limit_bytes", cfg.MemoryLimit))
 	for range cfg.Workers {
 		b.workers.Go(b.worker)
 	}
-	b.workers.Go(b.janitor)
+	b.janitor.Go(b.tidy)
 	return b, nil
 }
 
-// Stop drains the broker: no new jobs, running solves get the grace to finish and are then stopped, waiting jobs fail
-// with reason DRAINING, streams end. It may be called more than once.
+// deaf is how long a back end may take to return once its solve was called off; the contract says one iteration.
+const deaf = 5 * time.Second
+
+// Stop drains the broker: no new jobs; waiting jobs fail with reason DRAINED; running solves get the grace to finish and
+// are then called off, their jobs failing likewise; then streams end. It may be called more than once, and returns when
+// all is done. Only a back end that does not obey is left behind, and named in the log.
 func (b *Broker) Stop() {
 	b.once.Do(func() {
+		b.log.Info("draining", zap.Duration("grace", b.cfg.Grace))
 		b.mu.Lock()
 		b.drains = true
-		b.work.Broadcast()
-		b.mu.Unlock()
-		b.log.Info("draining", zap.Duration("grace", b.cfg.Grace))
-		finished := make(chan struct{})
-		go func() {
-			for b.busy() {
-				time.Sleep(time.Millisecond)
-			}
-			close(finished)
-		}()
-		select {
-		case <-finished:
-		case <-time.After(b.cfg.Grace):
-		}
-		b.stop()
-		b.workers.Wait()
-		b.mu.Lock()
 		waiting := b.queue
 		b.queue = nil
+		b.work.Broadcast()
 		b.mu.Unlock()
 		for _, id := range waiting {
-			b.fail(id, Draining, "the server stopped before a worker was free; submit again")
+			b.fail(id, Drained, "the server stopped before a worker was free; submit again")
+		}
+		idle := make(chan struct{})
+		go func() {
+			b.workers.Wait()
+			close(idle)
+		}()
+		if !within(idle, b.cfg.Grace) {
+			b.stop()
+			if !within(idle, deaf) {
+				b.log.Error("a back end goes on although it was told to stop")
+			}
+		}
+		b.stop()
+		b.janitor.Wait()
+		for _, id := range b.unended() {
+			b.fail(id, Drained, "the server stopped during the solve; submit again")
 		}
 		close(b.drained)
 		b.log.Info("drained")
 	})
 }
 
-func (b *Broker) busy() bool {
-	b.mu.Lock()
-	defer b.mu.Unlock()
-	return b.running > 0
+// within reports whether a channel is closed in time.
+func within(c <-chan struct{}, d time.Duration) bool {
+	t := time.NewTimer(d)
+	defer t.Stop()
+	select {
+	case <-c:
+		return true
+	case <-t.C:
+		return false
+	}
 }
 
-// janitor removes uploaded models that no job uses when their time is over.
-func (b *Broker) janitor() {
-	tick := time.NewTicker(max(b.cfg.ModelLifetime/10, time.Second))
+// unended lists the jobs that have not ended, in no order.
+func (b *Broker) unended() (ids []string) {
+	b.mu.Lock()
+	defer b.mu.Unlock()
+	for id, l := range b.live {
+		select {
+		case <-l.done:
+		default:
+			ids = append(ids, id)
+		}
+	}
+	return ids
+}
+
+// tidy removes uploaded models that no job uses when their time is over.
+func (b *Broker) tidy() {
+	tick := time.NewTicker(max(b.cfg.ModelLifetime/10, time.Millisecond))
 	defer tick.Stop()
 	for {
 		select {
@@ -147,13 +169,5 @@ func (b *Broker) janitor() {
 			}
 			b.mu.Unlock()
 		}
-	}
-}
-
-// forgetModel removes a model from the store; b.mu is held.
-func (b *Broker) forgetModel(id string) {
-	delete(b.models, id)
-	if err := b.blobs.Delete(context.Background(), modelKey(id)); err != nil {
-		b.log.Error("removing a model", zap.String("model", id), zap.Error(err))
 	}
 }

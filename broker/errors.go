@@ -34,7 +34,8 @@ const (
 	RequestIDReused  Reason = "REQUEST_ID_REUSED"  // the same request_id with another request
 	QueueFull        Reason = "QUEUE_FULL"         // too many jobs wait
 	StoreFull        Reason = "STORE_FULL"         // no room for the model
-	Draining         Reason = "DRAINING"           // the server is stopping
+	Draining         Reason = "DRAINING"           // the server is stopping: try another, or later
+	Drained          Reason = "DRAINED"            // the server stopped before there was an answer
 	BackendFailed    Reason = "BACKEND_FAILED"     // no back end could run
 	RunLimitReached  Reason = "RUN_LIMIT_REACHED"  // of the solve
 	LifeLimitReached Reason = "LIFE_LIMIT_REACHED" // of the job
@@ -88,6 +89,7 @@ func statusOf(err error) error {
 	var r *refusal
 	var faults *model.FaultError
 	var large *wire.TooLargeError
+	var stream *wire.StreamError
 	switch {
 	case err == nil:
 		return nil
@@ -95,6 +97,8 @@ func statusOf(err error) error {
 		return r.GRPCStatus().Err()
 	case errors.As(err, &faults):
 		return (&refusal{code: codes.InvalidArgument, reason: ModelInvalid, text: faults.Error(), faults: faults.Faults}).GRPCStatus().Err()
+	case errors.As(err, &stream):
+		return (&refusal{code: codes.InvalidArgument, reason: UploadBroken, text: stream.Error(), faults: []model.Fault{stream.Fault}}).GRPCStatus().Err()
 	case errors.As(err, &large):
 		return refuse(codes.ResourceExhausted, ModelTooLarge, "%v", large).GRPCStatus().Err()
 	case errors.Is(err, store.ErrFull):

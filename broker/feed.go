@@ -59,6 +59,13 @@ func (f *feed) rouse() {
 	f.wake = make(chan struct{})
 }
 
+// last returns the latest sequence number.
+func (f *feed) last() uint64 {
+	f.mu.Lock()
+	defer f.mu.Unlock()
+	return f.sequence
+}
+
 // after returns the events behind a sequence number in order, a channel that is closed when there are more, and whether
 // these are the last.
 func (f *feed) after(sequence uint64) (events []*towpathv1.WatchJobResponse, more <-chan struct{}, ended bool) {

@@ -17,39 +17,6 @@ import (
 // errEnded says that a job has ended and does not change any more.
 var errEnded = errors.New("the job has ended")
 
-// accept makes a job of a model in the store and puts it into the queue. The model's use was counted by the caller.
-func (b *Broker) accept(ctx context.Context, job *towpathv1.Job, modelID, requestID string, life time.Duration) error {
-	r := &record{Job: job, Model: modelID}
-	raw, err := r.encode()
-	if err != nil {
-		return err
-	}
-	b.mu.Lock()
-	defer b.mu.Unlock()
-	switch {
-	case b.drains:
-		x := refuse(codes.Unavailable, Draining, "the server is stopping; try again")
-		x.retry = time.Second
-		return x
-	case len(b.queue) >= b.cfg.QueueLimit:
-		x := refuse(codes.ResourceExhausted, QueueFull, "%d jobs wait, which is the limit; try later", len(b.queue))
-		x.retry = 5 * time.Second
-		return x
-	}
-	if _, err := b.records.Create(ctx, jobKey(job.GetId()), raw); err != nil {
-		return err
-	}
-	id := job.GetId()
-	l := &liveJob{feed: newFeed(), request: requestID, model: modelID, done: make(chan struct{})}
-	l.expiry = time.AfterFunc(life, func() { b.expire(id) })
-	l.feed.state(proto.CloneOf(job), time.Now(), false)
-	b.live[id] = l
-	b.queue = append(b.queue, id)
-	b.work.Signal()
-	b.log.Info("job accepted", zap.String("job", id), zap.String("model", modelID), zap.String("name", job.GetModelName()))
-	return nil
-}
-
 // get reads a job's record.
 func (b *Broker) get(ctx context.Context, id string) (*record, uint64, error) {
 	raw, revision, err := b.records.Get(ctx, jobKey(id))
@@ -112,36 +79,29 @@ func (b *Broker) finish(id string, l *liveJob) {
 	b.release(l.model)
 	b.ended = append(b.ended, id)
 	for len(b.ended) > b.cfg.Retain {
-		old := b.ended[0]
-		b.ended = b.ended[1:]
-		request := b.live[old].request
-		delete(b.live, old)
-		ctx := context.Background()
-		keys := []string{jobKey(old)}
-		if request != "" {
-			keys = append(keys, requestKey(request))
-		}
-		for _, k := range keys {
-			if _, revision, err := b.records.Get(ctx, k); err == nil {
-				if err := b.records.Delete(ctx, k, revision); err != nil {
-					b.log.Error("forgetting a job", zap.String("job", old), zap.Error(err))
-				}
-			}
-		}
-		if err := b.blobs.Delete(ctx, answerKey(old)); err != nil {
-			b.log.Error("forgetting an answer", zap.String("job", old), zap.Error(err))
-		}
+		b.forgetOldest()
 	}
 }
 
-// release gives up one job's use of a model; b.mu is held.
-func (b *Broker) release(modelID string) {
-	use := b.models[modelID]
-	if use == nil {
-		return
+// forgetOldest removes the job that ended first, with its answer; b.mu is held.
+func (b *Broker) forgetOldest() {
+	ctx := context.Background()
+	old := b.ended[0]
+	b.ended = b.ended[1:]
+	keys := []string{jobKey(old)}
+	if request := b.live[old].request; request != "" {
+		keys = append(keys, requestKey(request))
 	}
-	if use.jobs--; use.jobs == 0 && time.Now().After(use.until) {
-		b.forgetModel(modelID)
+	delete(b.live, old)
+	for _, k := range keys {
+		if _, revision, err := b.records.Get(ctx, k); err == nil {
+			if err := b.records.Delete(ctx, k, revision); err != nil {
+				b.log.Error("forgetting a job", zap.String("job", old), zap.Error(err))
+			}
+		}
+	}
+	if err := b.blobs.Delete(ctx, answerKey(old)); err != nil {
+		b.log.Error("forgetting an answer", zap.String("job", old), zap.Error(err))
 	}
 }
 

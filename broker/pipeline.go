@@ -35,6 +35,9 @@ func newPlanner(drivers []backends.Driver, catalogue []bridges.Bridge) (*planner
 	}
 	for _, d := range drivers {
 		for _, s := range d.Sheets() {
+			if s.Name == "" || s.Backend == "" || s.Toll == nil || len(s.Takes) == 0 {
+				return nil, fmt.Errorf("sheet '%s' of back end '%s' lacks a name, a toll or kinds", s.Name, s.Backend)
+			}
 			if p.drivers[s.Name] != nil {
 				return nil, fmt.Errorf("two back ends have the sheet %s", s.Name)
 			}
@@ -52,10 +55,7 @@ func (p *planner) plan(demands []capability.Demand, o *towpathv1.JobOptions, mem
 	if err != nil {
 		return nil, err
 	}
-	options := capability.Options{MaxBytes: float64(memoryLimit), Need: capability.LiftsValues}
-	if m := o.GetMaxMemoryBytes(); m > 0 {
-		options.MaxBytes = float64(m)
-	}
+	options := capability.Options{MaxBytes: float64(memoryOf(o, memoryLimit)), Need: capability.LiftsValues}
 	if o.GetNeedMultipliers() {
 		options.Need |= capability.LiftsMultipliers
 	}
@@ -65,6 +65,14 @@ func (p *planner) plan(demands []capability.Demand, o *towpathv1.JobOptions, mem
 	proposals := capability.Plan(demands, p.rules, sheets, options)
 	slices.SortStableFunc(proposals, func(a, b capability.Proposal) int { return compareProposals(&a, &b) })
 	return proposals, nil
+}
+
+// memoryOf is what a solve may take: what the job asks for, at most the limit.
+func memoryOf(o *towpathv1.JobOptions, limit uint64) uint64 {
+	if m := o.GetMaxMemoryBytes(); m > 0 {
+		return min(m, limit)
+	}
+	return limit
 }
 
 func compareProposals(a, b *capability.Proposal) int {
@@ -119,11 +127,22 @@ type outcome struct {
 	sound  bool // worth sending without trying elsewhere
 }
 
+// bugError is a fault of ours, or a back end's panic. Clients are told that much; the log has the rest.
+type bugError struct {
+	cause error
+	stack []byte
+}
+
+// Error is what clients are told.
+func (e *bugError) Error() string {
+	return "internal fault; it is in the server's log, please report it"
+}
+
 // attempt takes a model over one route, solves, lifts and examines. Panics of bridges and drivers are contained.
-func (p *planner) attempt(ctx context.Context, m *model.Model, r *capability.Route, o backends.Options, tolerance float64) (out outcome, err error) {
+func (p *planner) attempt(ctx context.Context, m *model.Model, r *capability.Route, o backends.Options, tolerance float64) (out *outcome, err error) {
 	defer func() {
 		if x := recover(); x != nil {
-			err = fmt.Errorf("%s panicked: %v\n%s", r.Sheet.Name, x, debug.Stack())
+			out, err = nil, &bugError{fmt.Errorf("panic: %v", x), debug.Stack()}
 		}
 	}()
 	began := time.Now()
@@ -135,19 +154,19 @@ func (p *planner) attempt(ctx context.Context, m *model.Model, r *capability.Rou
 	t := &towpathv1.Timings{}
 	x, err := bridges.Cross(m, r, p.catalogue)
 	if err != nil {
-		return out, err
+		return nil, &bugError{cause: err}
 	}
 	t.Lowered = lap()
 	low, err := p.drivers[r.Sheet.Name].Solve(ctx, r.Sheet.Name, x.Lowered, o)
 	if err != nil {
-		return out, fmt.Errorf("%s: %w", r.Sheet.Name, err)
+		return nil, err
 	}
 	t.Solved = lap()
 	a := x.Lift(shaped(x.Lowered, low))
 	t.Lifted = lap()
-	out.report = check.Examine(m, a, check.Tolerances{Residual: tolerance})
+	out = &outcome{report: check.Examine(m, a, check.Tolerances{Residual: tolerance})}
 	t.Examined = lap()
-	out.sound = out.report.Verdict == check.Checked || a.Outcome == model.Stopped
+	out.sound = passed(&out.report) || a.Outcome == model.Stopped
 	honest(a, &out.report)
 	out.answer = wire.AnswerToProto(m, a)
 	out.answer.Examination = wire.ExaminationToProto(&out.report)
@@ -157,22 +176,23 @@ func (p *planner) attempt(ctx context.Context, m *model.Model, r *capability.Rou
 	return out, nil
 }
 
-// honest takes back claims that the examination does not support: nothing leaves as infeasible, unbounded or optimal that
-// was not checked.
+// passed reports whether an examination supports what was claimed.
+func passed(r *check.Report) bool { return r.Verdict == check.Checked || r.Verdict == check.Proved }
+
+// honest takes back claims that the examination does not support: nothing leaves as infeasible or unbounded whose
+// certificate did not pass, nor as optimal when it is refuted. The note says what was claimed.
 func honest(a *model.Answer, r *check.Report) {
-	if r.Verdict == check.Checked {
+	claimed := a.Outcome
+	certificate := claimed == model.Infeasible || claimed == model.Unbounded
+	switch {
+	case certificate && !passed(r):
+		a.Note = fmt.Sprintf("the back end claimed %s; its certificate is %s. %s", claimed, r.Verdict, a.Note)
+	case claimed == model.Optimal && r.Verdict == check.Refuted:
+		a.Note = "the back end claimed an optimum; the examination contradicts it. " + a.Note
+	default:
 		return
 	}
-	switch a.Outcome {
-	case model.Infeasible, model.Unbounded:
-		a.Note = fmt.Sprintf("the back end claimed %s; the certificate did not pass. %s", a.Outcome, a.Note)
-		a.Outcome = model.Inaccurate
-	case model.Optimal:
-		if r.Verdict == check.Refuted {
-			a.Note = "the back end claimed an optimum; the examination contradicts it. " + a.Note
-			a.Outcome = model.Inaccurate
-		}
-	}
+	a.Outcome = model.Inaccurate
 }
 
 // shaped drops parts of a back end's answer that do not have the lowered model's shape: lifting trusts shapes, and a
@@ -182,6 +202,10 @@ func shaped(m *model.Model, a *model.Answer) *model.Answer {
 		return &model.Answer{Outcome: model.Inaccurate, Objective: math.NaN(), Bound: math.NaN(), Note: "the back end returned nothing"}
 	}
 	out := *a
+	if out.Outcome == model.OutcomeUnknown || out.Outcome > model.Stopped {
+		out.Outcome = model.Inaccurate
+	}
+	out.Iterations = max(0, out.Iterations)
 	out.Point, out.Ray = shapedPoint(m, a.Point), shapedPoint(m, a.Ray)
 	out.Multipliers, out.Farkas = shapedMultipliers(m, a.Multipliers), shapedMultipliers(m, a.Farkas)
 	return &out

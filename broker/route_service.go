@@ -20,18 +20,17 @@ type routeService struct {
 // PlanRoutes implements towpathv1.RouteServiceServer.
 func (s *routeService) PlanRoutes(ctx context.Context, q *towpathv1.PlanRoutesRequest) (*towpathv1.PlanRoutesResponse, error) {
 	if err := validOptions(q.GetOptions()); err != nil {
-		return nil, statusOf(err)
+		return nil, err
 	}
-	m, _, err := s.b.modelOf(ctx, q.GetModel(), q.GetModelId(), q.GetSource() != nil)
+	in, err := s.b.intake(ctx, q.GetModel(), q.GetModelId(), q.GetSource() != nil)
 	if err != nil {
-		return nil, statusOf(err)
+		return nil, err
 	}
-	demands := capability.Summarize(m)
-	proposals, err := s.b.planner.plan(demands, q.GetOptions(), s.b.cfg.MemoryLimit)
+	proposals, err := s.b.planner.plan(in.demands, q.GetOptions(), s.b.cfg.MemoryLimit)
 	if err != nil {
-		return nil, statusOf(err)
+		return nil, err
 	}
-	out := &towpathv1.PlanRoutesResponse{Demands: wire.DemandsToProto(demands)}
+	out := &towpathv1.PlanRoutesResponse{Demands: wire.DemandsToProto(in.demands)}
 	for i := range proposals {
 		p := wire.ProposalToProto(&proposals[i])
 		switch {

@@ -16,6 +16,7 @@ import (
 	"google.golang.org/grpc/health/grpc_health_v1"
 	"google.golang.org/grpc/keepalive"
 	"google.golang.org/grpc/reflection"
+	"google.golang.org/grpc/status"
 	"google.golang.org/grpc/test/bufconn"
 )
 
@@ -31,6 +32,8 @@ const (
 	leastPing   = 20 * time.Second
 	pingAfter   = time.Minute
 	pingTimeout = 20 * time.Second
+	// concurrentCalls bounds the calls on one connection: watching is cheap, so it is generous.
+	concurrentCalls = 1000
 	// closing bounds how long open calls may take to end when the server stops.
 	closing = 5 * time.Second
 )
@@ -40,9 +43,10 @@ func NewServer(b *Broker) *Server {
 	s := &Server{broker: b, health: health.NewServer()}
 	s.grpc = grpc.NewServer(
 		grpc.KeepaliveEnforcementPolicy(keepalive.EnforcementPolicy{MinTime: leastPing}),
+		grpc.MaxConcurrentStreams(concurrentCalls),
 		grpc.KeepaliveParams(keepalive.ServerParameters{Time: pingAfter, Timeout: pingTimeout}),
-		grpc.ChainUnaryInterceptor(s.recoverUnary),
-		grpc.ChainStreamInterceptor(s.recoverStream),
+		grpc.ChainUnaryInterceptor(s.settleUnary),
+		grpc.ChainStreamInterceptor(s.settleStream),
 	)
 	towpathv1.RegisterJobServiceServer(s.grpc, &jobService{b: b})
 	towpathv1.RegisterRouteServiceServer(s.grpc, &routeService{b: b})
@@ -66,22 +70,31 @@ func (s *Server) Stop() {
 	s.grpc.GracefulStop()
 }
 
-// contained turns a panic of a handler into an internal fault: one request must not end the others.
-func (s *Server) contained(method string, err *error) {
+// settled turns whatever a handler ended with into what goes out, panics too: one request must not end the others.
+func (s *Server) settled(method string, err *error) {
 	if x := recover(); x != nil {
-		s.broker.log.Error("handler panicked", zap.String("method", method), zap.Any("panic", x), zap.ByteString("stack", debug.Stack()))
-		*err = refuse(codes.Internal, Internal, "internal fault; please report it").GRPCStatus().Err()
+		*err = s.broker.panicked(method, x)
+	}
+	*err = statusOf(*err)
+	if status.Code(*err) == codes.Internal {
+		s.broker.log.Error("call failed", zap.String("method", method), zap.Error(*err))
 	}
 }
 
-func (s *Server) recoverUnary(ctx context.Context, q any, info *grpc.UnaryServerInfo, handle grpc.UnaryHandler) (out any, err error) {
-	defer s.contained(info.FullMethod, &err)
+func (s *Server) settleUnary(ctx context.Context, q any, info *grpc.UnaryServerInfo, handle grpc.UnaryHandler) (out any, err error) {
+	defer s.settled(info.FullMethod, &err)
 	return handle(ctx, q)
 }
 
-func (s *Server) recoverStream(srv any, stream grpc.ServerStream, info *grpc.StreamServerInfo, handle grpc.StreamHandler) (err error) {
-	defer s.contained(info.FullMethod, &err)
+func (s *Server) settleStream(srv any, stream grpc.ServerStream, info *grpc.StreamServerInfo, handle grpc.StreamHandler) (err error) {
+	defer s.settled(info.FullMethod, &err)
 	return handle(srv, stream)
+}
+
+// panicked logs a panic and returns what a client is told of it.
+func (b *Broker) panicked(where string, x any) error {
+	b.log.Error("panic contained", zap.String("where", where), zap.Any("panic", x), zap.ByteString("stack", debug.Stack()))
+	return refuse(codes.Internal, Internal, "internal fault; it is in the server's log, please report it")
 }
 
 // Embed serves the broker inside this process and returns a connection to it, real gRPC without a network. close stops

@@ -31,12 +31,8 @@ func (b *Broker) worker() {
 		}
 		id := b.queue[0]
 		b.queue = b.queue[1:]
-		b.running++
 		b.mu.Unlock()
 		b.process(id)
-		b.mu.Lock()
-		b.running--
-		b.mu.Unlock()
 	}
 }
 
@@ -44,8 +40,7 @@ func (b *Broker) worker() {
 func (b *Broker) process(id string) {
 	defer func() {
 		if x := recover(); x != nil {
-			b.log.Error("job panicked", zap.String("job", id), zap.Any("panic", x), zap.Stack("stack"))
-			b.fail(id, Internal, "internal fault; please report it with the job's id")
+			b.fail(id, Internal, b.panicked("job "+id, x).Error())
 		}
 	}()
 	ctx, cancel := context.WithCancelCause(b.ctx)
@@ -79,7 +74,7 @@ func (b *Broker) process(id string) {
 		return
 	}
 	b.logRoute(id, r.Model, proposals)
-	b.solve(ctx, id, m, proposals, planned)
+	b.solve(ctx, id, l, m, proposals, planned)
 }
 
 // logRoute writes the one line that says which way a job goes.
@@ -109,7 +104,7 @@ func (b *Broker) logRoute(id, modelID string, proposals []capability.Proposal) {
 const attempts = 2
 
 // solve runs a job over its routes and stores the answer.
-func (b *Broker) solve(ctx context.Context, id string, m *model.Model, proposals []capability.Proposal, planned time.Duration) {
+func (b *Broker) solve(ctx context.Context, id string, l *liveJob, m *model.Model, proposals []capability.Proposal, planned time.Duration) {
 	r, err := b.change(id, func(r *record) {
 		r.Job.State = towpathv1.JobState_JOB_STATE_RUNNING
 		r.Job.StartTime = timestamppb.Now()
@@ -124,71 +119,129 @@ func (b *Broker) solve(ctx context.Context, id string, m *model.Model, proposals
 	}
 	run, cancel := context.WithTimeout(ctx, limit)
 	defer cancel()
-	o, tolerance := b.solveOptions(id, r.Job.GetOptions())
-	var best *outcome
-	var faults []error
+	o, tolerance := b.solveOptions(l.feed, r.Job.GetOptions())
+	var tried []try
 	for i := 0; i < min(attempts, len(proposals)) && proposals[i].Route != nil && run.Err() == nil; i++ {
-		out, err := b.planner.attempt(run, m, proposals[i].Route, o, tolerance)
-		if err != nil {
-			faults = append(faults, err)
-			b.log.Error("attempt failed", zap.String("job", id), zap.String("sheet", proposals[i].Sheet.Name), zap.Error(err))
-			continue
-		}
-		b.log.Info("attempt answered", zap.String("job", id), zap.String("sheet", proposals[i].Sheet.Name), zap.Stringer("verdict", out.report.Verdict),
-			zap.Float64("toll_seconds", proposals[i].Route.Toll.Seconds), zap.Float64("seconds", out.answer.GetTimings().GetSolved().AsDuration().Seconds()))
-		if best == nil || out.report.Verdict < best.report.Verdict {
-			best = &out
-		}
-		if out.sound {
+		t := try{sheet: proposals[i].Sheet.Name}
+		t.outcome, t.err = b.planner.attempt(run, m, proposals[i].Route, o, tolerance)
+		b.logTry(id, &t)
+		tried = append(tried, t)
+		if t.err == nil && t.outcome.sound {
 			break
 		}
 	}
 	if ctx.Err() != nil { // withdrawn, expired, or the broker stops
 		if !errors.Is(context.Cause(ctx), errEnded) {
-			b.fail(id, Draining, "the server stopped during the solve; submit again")
+			b.fail(id, Drained, "the server stopped during the solve; submit again")
 		}
 		return
 	}
-	if best == nil {
-		if run.Err() != nil {
-			b.fail(id, RunLimitReached, fmt.Sprintf("the solve reached its limit of %v without a point; ask for more time, or for less accuracy", limit))
-			return
-		}
-		b.fail(id, BackendFailed, fmt.Sprintf("no back end could run: %v", errors.Join(faults...)))
+	best := bestOf(tried)
+	switch {
+	case best == nil && run.Err() != nil:
+		b.fail(id, RunLimitReached, fmt.Sprintf("the solve reached its limit of %v without a point; ask for more time, or for less accuracy", limit))
+		return
+	case best == nil:
+		reason, text := failure(tried)
+		b.fail(id, reason, text)
 		return
 	}
-	for _, f := range faults {
-		best.answer.Note += fmt.Sprintf("; before that: %v", f)
-	}
-	best.answer.Timings.Planned = durationpb.New(planned)
-	best.answer.Timings.Waited = durationpb.New(r.Job.GetStartTime().AsTime().Sub(r.Job.GetSubmitTime().AsTime()))
-	b.store(id, best)
+	a := best.outcome.answer
+	a.Note = withOthers(a.Note, best, tried)
+	a.Timings.Planned = durationpb.New(planned)
+	a.Timings.Waited = durationpb.New(r.Job.GetStartTime().AsTime().Sub(r.Job.GetSubmitTime().AsTime()))
+	b.store(id, best.outcome)
 }
 
-// solveOptions reads what a job asks of its solve.
-func (b *Broker) solveOptions(id string, o *towpathv1.JobOptions) (backends.Options, float64) {
-	b.mu.Lock()
-	l := b.live[id]
-	b.mu.Unlock()
-	options := backends.Options{Tolerance: o.GetTolerance(), MaxIterations: int(o.GetMaxIterations()), MaxMemory: int64(b.cfg.MemoryLimit)}
-	if o.GetMaxMemoryBytes() > 0 {
-		options.MaxMemory = int64(o.GetMaxMemoryBytes())
+// try is one attempt of a job, over one route.
+type try struct {
+	sheet   string
+	outcome *outcome // nil when err is set
+	err     error
+}
+
+// logTry says how an attempt went; of a bug of ours, all there is.
+func (b *Broker) logTry(id string, t *try) {
+	var bug *bugError
+	switch {
+	case errors.As(t.err, &bug):
+		b.log.Error("attempt failed by a bug", zap.String("job", id), zap.String("sheet", t.sheet), zap.Error(bug.cause), zap.ByteString("stack", bug.stack))
+	case t.err != nil:
+		b.log.Error("attempt failed", zap.String("job", id), zap.String("sheet", t.sheet), zap.Error(t.err))
+	default:
+		b.log.Info("attempt answered", zap.String("job", id), zap.String("sheet", t.sheet), zap.Stringer("verdict", t.outcome.report.Verdict),
+			zap.Float64("toll_seconds", t.outcome.answer.GetRoute().GetToll().GetSeconds()),
+			zap.Float64("seconds", t.outcome.answer.GetTimings().GetSolved().AsDuration().Seconds()))
 	}
-	options.Progress = func(p backends.Progress) {
-		l.feed.step(&towpathv1.Progress{
-			Iteration: uint32(p.Iteration), Primal: p.Primal, Dual: p.Dual, Gap: p.Gap, PrimalResidual: p.PrimalResidual,
-			DualResidual: p.DualResidual, Step: p.Step, Elapsed: durationpb.New(p.Elapsed),
-		}, time.Now())
+}
+
+// bestOf returns the attempt with the best verdict, the earlier one on ties; nil when none answered.
+func bestOf(tried []try) (best *try) {
+	for i := range tried {
+		if t := &tried[i]; t.err == nil && (best == nil || t.outcome.report.Verdict < best.outcome.report.Verdict) {
+			best = t
+		}
 	}
-	// An answer is examined at the broker's tolerance, or at the job's when that is looser.
-	return options, max(b.cfg.Tolerance, o.GetTolerance())
+	return best
+}
+
+// failure says why a job failed none of whose attempts answered.
+func failure(tried []try) (Reason, string) {
+	reason, text := BackendFailed, "no back end could run:"
+	for _, t := range tried {
+		var bug *bugError
+		if errors.As(t.err, &bug) {
+			reason = Internal
+		}
+		text += fmt.Sprintf("\n%s: %v", t.sheet, t.err)
+	}
+	return reason, text
+}
+
+// withOthers adds to the note of the best attempt what became of the others.
+func withOthers(note string, best *try, tried []try) string {
+	for i := range tried {
+		t := &tried[i]
+		switch {
+		case t == best:
+			continue
+		case note != "":
+			note += "\n"
+		}
+		if t.err != nil {
+			note += fmt.Sprintf("%s was tried, too, and failed: %v", t.sheet, t.err)
+		} else {
+			note += fmt.Sprintf("%s was tried, too, and its answer is %s", t.sheet, t.outcome.report.Verdict)
+		}
+	}
+	return note
+}
+
+// solveOptions reads what a job asks of its solve, and of the examination.
+func (b *Broker) solveOptions(f *feed, o *towpathv1.JobOptions) (options backends.Options, tolerance float64) {
+	options = backends.Options{
+		Tolerance: o.GetTolerance(), MaxIterations: int(o.GetMaxIterations()),
+		MaxMemory: int64(memoryOf(o, b.cfg.MemoryLimit)),
+		Progress: func(p backends.Progress) {
+			f.step(&towpathv1.Progress{
+				Iteration: uint32(p.Iteration), Primal: p.Primal, Dual: p.Dual, Gap: p.Gap, PrimalResidual: p.PrimalResidual,
+				DualResidual: p.DualResidual, Step: p.Step, Elapsed: durationpb.New(p.Elapsed),
+			}, time.Now())
+		},
+	}
+	if o.GetTolerance() > 0 {
+		return options, o.GetTolerance()
+	}
+	return options, b.cfg.Tolerance
 }
 
 // store keeps the answer and ends the job.
 func (b *Broker) store(id string, out *outcome) {
 	raw, err := proto.Marshal(out.answer)
 	if err == nil {
-		err = b.blobs.Put(context.Background(), answerKey(id), raw)
+		b.mu.Lock()
+		err = b.keep(context.Background(), answerKey(id), raw)
+		b.mu.Unlock()
 	}
 	if err != nil {
 		b.fail(id, StoreFull, fmt.Sprintf("the answer could not be stored: %v", err))

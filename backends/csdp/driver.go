@@ -147,8 +147,8 @@ func stopped(note string) *model.Answer {
 	return &model.Answer{Outcome: model.Stopped, Objective: math.NaN(), Bound: math.NaN(), Note: note}
 }
 
-// defaultTolerance is tighter than csdp's own, because perturbobj=0 lets it get there.
-const defaultTolerance = 1e-9
+// defaultTolerance is tighter than csdp's own, because perturbobj=1 lets it get there.
+const defaultTolerance = 1e-8
 
 // parameters writes param.csdp. With perturbobj=1, csdp's default, accuracy is capped near 1e-8 and a tighter tolerance
 // makes the point worse; without it 1e-10 is reached on regular problems.
@@ -160,7 +160,7 @@ func parameters(o backends.Options) []byte {
 	if limit == 0 {
 		limit = 100
 	}
-	return fmt.Appendf(nil, "axtol=%g\natytol=%g\nobjtol=%g\npinftol=1e8\ndinftol=1e8\nmaxiter=%d\nminstepfrac=0.90\nmaxstepfrac=0.97\nminstepp=1e-8\nminstepd=1e-8\nusexzgap=1\ntweakgap=0\naffine=0\nprintlevel=1\nperturbobj=0\nfastmode=0\n", t, t, t, limit)
+	return fmt.Appendf(nil, "axtol=%g\natytol=%g\nobjtol=%g\npinftol=1e8\ndinftol=1e8\nmaxiter=%d\nminstepfrac=0.90\nmaxstepfrac=0.97\nminstepp=1e-8\nminstepd=1e-8\nusexzgap=1\ntweakgap=0\naffine=0\nprintlevel=1\nperturbobj=1\nfastmode=0\n", t, t, t, limit)
 }
 
 // progress reads csdp's lines "Iter: 3 Ap: 1.00e+00 Pobj: 1.5e+01 Ad: 9.0e-01 Dobj: 1.6e+01".

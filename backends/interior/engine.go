@@ -30,6 +30,9 @@ const (
 	stepFraction       = 0.99
 	leastStep          = 1e-9
 	leastCentering     = 1e-8
+	// Iterations after the tolerance is met, and by how much each has to improve.
+	polishing  = 5
+	polishGain = 0.5
 )
 
 // run iterates until the standard form shows one of its ends, and returns the iterate that shows it. Mehrotra's
@@ -49,7 +52,11 @@ func (f *form) run(ctx context.Context, o backends.Options) (end ending, last *s
 	var proof *state // best certificate so far
 	var proofM measure
 	proofResidual, proofEnd := math.Inf(1), endStuck
+	polished := 0
 	stop := func(end ending, iterations int) (ending, *state, measure, int) {
+		if bestM.worst() <= tolerance {
+			return endOptimal, best, bestM, iterations
+		}
 		if proofResidual <= looseCertificate && bestM.worst() > looseCertificate && end == endStuck {
 			return proofEnd, proof, proofM, iterations
 		}
@@ -63,11 +70,15 @@ func (f *form) run(ctx context.Context, o backends.Options) (end ending, last *s
 			o.Progress(backends.Progress{Iteration: iter, Primal: m.primalValue + f.constant, Dual: m.dualValue + f.constant, Gap: m.gap,
 				PrimalResidual: m.primal, DualResidual: m.dual, Step: step, Elapsed: time.Since(began)})
 		}
+		gained := m.worst() < polishGain*bestM.worst()
 		if m.worst() < bestM.worst() {
 			best, bestM = s.clone(), m
 		}
-		if m.worst() <= tolerance {
-			return endOptimal, s, m, iter
+		if bestM.worst() <= tolerance {
+			// Values are as sharp as the tolerance, points and multipliers only as its root: go on while it pays.
+			if polished++; !gained || polished > polishing {
+				return endOptimal, best, bestM, iter
+			}
 		}
 		if m.infeasible < proofResidual && m.infeasible*(1+m.ySize) <= certificateProduct {
 			proof, proofM, proofResidual, proofEnd = s.clone(), m, m.infeasible, endInfeasible

@@ -16,7 +16,7 @@ func ModelFromProto(p *towpathv1.Model) (*model.Model, error) {
 	if p == nil {
 		return nil, fault("model", "the request", "it has no model", "give a model, or the name of an uploaded one")
 	}
-	d := &decoder{m: &model.Model{Name: p.GetName()}, starts: []int{0}, number: map[string]int{}}
+	d := &decoder{m: &model.Model{Name: p.GetName()}, starts: []int{0}, number: map[string]int{}, spare: spareNumbers}
 	for k, b := range p.GetBlocks() {
 		if err := d.block(k, b); err != nil {
 			return nil, err
@@ -38,6 +38,20 @@ type decoder struct {
 	m      *model.Model
 	starts []int
 	number map[string]int // of blocks, by name
+	spare  int            // numbers that may still be made of nothing
+}
+
+// spareNumbers bounds what a model may make of nothing, by one limit for many entries or by rows without terms: numbers
+// that the message did not pay for, so that a small message cannot ask for all memory there is.
+const spareNumbers = 1 << 25
+
+// spend takes n numbers out of what may be made of nothing.
+func (d *decoder) spend(n int) bool {
+	if n > d.spare {
+		return false
+	}
+	d.spare -= n
+	return true
 }
 
 func titled(what string, k int, name string) string {
@@ -103,10 +117,10 @@ func (d *decoder) block(k int, p *towpathv1.Block) error {
 	n := b.Entries()
 	if p.GetLower() != nil || p.GetUpper() != nil {
 		b.Bounds = &model.Bounds{}
-		if b.Bounds.Lower, err = limits(p.GetLower(), n, math.Inf(-1), b.RealEntry, path+".lower", place); err != nil {
+		if b.Bounds.Lower, err = d.limits(p.GetLower(), n, math.Inf(-1), b.RealEntry, path+".lower", place); err != nil {
 			return err
 		}
-		if b.Bounds.Upper, err = limits(p.GetUpper(), n, math.Inf(1), b.RealEntry, path+".upper", place); err != nil {
+		if b.Bounds.Upper, err = d.limits(p.GetUpper(), n, math.Inf(1), b.RealEntry, path+".upper", place); err != nil {
 			return err
 		}
 	}
@@ -118,12 +132,9 @@ func (d *decoder) block(k int, p *towpathv1.Block) error {
 	return nil
 }
 
-// broadcastLimit bounds what one number for all may be spread over: no more memory for bounds than a gigabyte.
-const broadcastLimit = 1 << 26
-
 // limits decodes limits: none, one for all, or one for each of n. absent stands for no limit; a list without imaginary
 // parts does not limit imaginary parts.
-func limits(p *towpathv1.Numbers, n int, absent float64, isReal func(int) bool, path, place string) ([]complex128, error) {
+func (d *decoder) limits(p *towpathv1.Numbers, n int, absent float64, isReal func(int) bool, path, place string) ([]complex128, error) {
 	x, err := numbersFromProto(p, path, place)
 	if err != nil {
 		return nil, err
@@ -136,8 +147,8 @@ func limits(p *towpathv1.Numbers, n int, absent float64, isReal func(int) bool, 
 		return nil, fault(path, place, fmt.Sprintf("there are %d limits for %d numbers", len(x), n), "give one for each, or one for all")
 	}
 	if len(x) == 1 {
-		if n > broadcastLimit {
-			return nil, fault(path, place, fmt.Sprintf("one limit is given for %d numbers", n), "give large blocks their limits one by one")
+		if !d.spend(n) {
+			return nil, fault(path, place, fmt.Sprintf("one limit is given for %d numbers", n), "give limits one by one where there are very many")
 		}
 		x = slices.Repeat(x, n)
 	} else {
@@ -198,9 +209,6 @@ func (d *decoder) objective(p *towpathv1.Objective) error {
 	return nil
 }
 
-// spareRows is how many rows a map may have beyond those that its message pays for: enough for what is written by hand.
-const spareRows = 1 << 20
-
 func (d *decoder) constraint(k int, p *towpathv1.Constraint) error {
 	path, place := fmt.Sprintf("constraints[%d]", k), titled("constraint", k, p.GetName())
 	field, err := fieldFromProto(p.GetField(), path, place)
@@ -241,10 +249,10 @@ func (d *decoder) constraint(k int, p *towpathv1.Constraint) error {
 	}
 	if cone == model.Range {
 		isReal := func(int) bool { return field != model.Complex }
-		if c.Cone.Lower, err = limits(p.GetLower(), rows, math.Inf(-1), isReal, path+".lower", place); err != nil {
+		if c.Cone.Lower, err = d.limits(p.GetLower(), rows, math.Inf(-1), isReal, path+".lower", place); err != nil {
 			return err
 		}
-		if c.Cone.Upper, err = limits(p.GetUpper(), rows, math.Inf(1), isReal, path+".upper", place); err != nil {
+		if c.Cone.Upper, err = d.limits(p.GetUpper(), rows, math.Inf(1), isReal, path+".upper", place); err != nil {
 			return err
 		}
 	} else if p.GetLower() != nil || p.GetUpper() != nil {
@@ -275,7 +283,7 @@ func (d *decoder) compressedMap(m *model.Map, p *towpathv1.Constraint, rows int,
 }
 
 func (d *decoder) termMap(m *model.Map, p *towpathv1.Constraint, rows, order int, path, place string) error {
-	if rows > spareRows+len(p.GetTerms()) {
+	if rows > len(p.GetTerms()) && !d.spend(rows-len(p.GetTerms())) {
 		return fault(path+".rows", place, fmt.Sprintf("%d rows have only %d terms", rows, len(p.GetTerms())), "send large maps as compressed coefficients")
 	}
 	var terms []term

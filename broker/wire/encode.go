@@ -41,6 +41,10 @@ func ModelToProto(m *model.Model) *towpathv1.Model {
 	return p
 }
 
+// readableRows is how many rows a map may have and still be written in terms; compressed rows pay for their rows, terms
+// do not (see spareNumbers).
+const readableRows = 1 << 10
+
 // termWriter writes coefficients as terms.
 type termWriter struct {
 	m      *model.Model
@@ -62,7 +66,7 @@ func (t termWriter) constraint(c *model.Constraint) *towpathv1.Constraint {
 	if c.Cone.Kind == model.Range {
 		q.Lower, q.Upper = numbersToProto(c.Cone.Lower, isComplex), numbersToProto(c.Cone.Upper, isComplex)
 	}
-	if c.Map.Nonzeros() > readable || rows > spareRows {
+	if c.Map.Nonzeros() > readable || rows > readableRows {
 		q.Coefficients = matrixToProto(&c.Map.Lin)
 		if c.Map.Conj != nil {
 			q.ConjugateCoefficients = matrixToProto(c.Map.Conj)

@@ -44,7 +44,8 @@ func ModelID(m *model.Model) string {
 		w.numbers(c.Cone.Upper)
 		w.numbers(c.Map.Const)
 		w.matrix(&c.Map.Lin)
-		if c.Map.Conj != nil {
+		if c.Map.Conj != nil && c.Map.Conj.Nonzeros() > 0 {
+			w.count(1)
 			w.matrix(c.Map.Conj)
 		} else {
 			w.count(0)

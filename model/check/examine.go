@@ -39,6 +39,8 @@ type examiner struct {
 
 	claimed bool // that the point is optimal
 	price   float64
+	missed  float64 // largest violation of the point, absolute
+	strayed float64 // largest violation of the multipliers, absolute
 }
 
 // solution examines a point and its multipliers.
@@ -82,6 +84,7 @@ func (e *examiner) primal(a *model.Answer) [][]complex128 {
 		} else {
 			res.Distance, res.SmallestEigenvalue = distance(c.Cone.Kind, c.Map.Field, v, false)
 		}
+		e.missed = max(e.missed, res.Distance)
 		e.feasible(res.Distance/(1+scale), "%s: relative distance of its rows from the cone", constraintTitle(e.m, k))
 		if a.Multipliers != nil {
 			e.price += res.Distance * norm(a.Multipliers.Constraints[k], c.Weight)
@@ -91,16 +94,19 @@ func (e *examiner) primal(a *model.Answer) [][]complex128 {
 		blk, res, v := &e.m.Blocks[b], &e.r.Blocks[b], a.Point.Values[b]
 		scale := 1 + norm(v, blk.Weight)
 		res.Distance, res.SmallestEigenvalue = distance(blk.Cone, blk.Field, v, false)
+		e.missed = max(e.missed, res.Distance)
 		e.feasible(res.Distance/scale, "%s: relative distance from its cone", blockTitle(e.m, b))
 		if blk.Bounds == nil {
 			continue
 		}
 		res.BoundViolation = fromLimits(v, blk.Bounds.Lower, blk.Bounds.Upper, blk.RealEntry)
+		e.missed = max(e.missed, res.BoundViolation)
 		e.feasible(res.BoundViolation/scale, "%s: relative violation of its bounds", blockTitle(e.m, b))
 		if a.Multipliers != nil {
 			e.price += res.BoundViolation * norm(a.Multipliers.Bounds[b], blk.Weight)
 		}
 	}
+	e.grown(largest(a.Point.Values), e.missed, numbersOf(e.m), "the point")
 	e.r.Objective = objective(e.m, x)
 	if e.claimed || !math.IsNaN(a.Objective) {
 		e.r.judge(apart(a.Objective, e.r.Objective), secondary*e.tol, e.claimed, "relative difference of the claimed objective %.10g from the recomputed %.10g", a.Objective, e.r.Objective)
@@ -135,6 +141,7 @@ func (e *examiner) dual(a *model.Answer) {
 		c, v := &e.m.Constraints[k], y.Constraints[k]
 		far := multiplierDistance(c, v)
 		e.r.Constraints[k].MultiplierDistance = far
+		e.strayed = max(e.strayed, far)
 		e.dualFeasible(far/(1+norm(v, c.Weight)), "%s: relative distance of its multiplier from the dual cone", constraintTitle(e.m, k))
 	}
 	left, scales := reduced(e.m, y, true)
@@ -145,9 +152,58 @@ func (e *examiner) dual(a *model.Answer) {
 			far = math.Hypot(far, pushOnNothing(y.Bounds[b], blk.Bounds.Lower, blk.Bounds.Upper))
 		}
 		e.r.Blocks[b].Stationarity = far
+		e.strayed = max(e.strayed, far)
 		e.dualFeasible(far/(1+scales[b]), "%s: relative distance of its reduced cost from the dual cone", blockTitle(e.m, b))
 		e.price += far * norm(a.Point.Values[b], blk.Weight)
 	}
+	cost := 1.0 // what multipliers answer to
+	for _, c := range e.m.Objective.Coef {
+		cost = max(cost, size(c))
+	}
+	e.grown(largest(y.Constraints), e.strayed, cost, "the multipliers")
+}
+
+// grown raises a flag when something is feasible by its size alone. own is the size of the model's numbers that it answers to.
+func (e *examiner) grown(size, miss, own float64, what string) {
+	if size > growth*own && size/own*(miss/own) > growthProduct {
+		e.r.because(Doubtful, "%s has size %.2g and misses by %.2g: it lives by its growth, as where an optimum or a feasible point is not attained", what, size, miss)
+	}
+}
+
+func largest(v [][]complex128) float64 {
+	n := 0.0
+	for _, x := range v {
+		for _, y := range x {
+			n = max(n, size(y))
+		}
+	}
+	return n
+}
+
+// numbersOf is 1 + the largest constant, limit or bound of the model: what points answer to.
+func numbersOf(m *model.Model) float64 {
+	n := 0.0
+	see := func(v []complex128) {
+		for _, x := range v {
+			for _, y := range []float64{real(x), imag(x)} {
+				if !math.IsInf(y, 0) {
+					n = max(n, math.Abs(y))
+				}
+			}
+		}
+	}
+	for k := range m.Constraints {
+		see(m.Constraints[k].Map.Const)
+		see(m.Constraints[k].Cone.Lower)
+		see(m.Constraints[k].Cone.Upper)
+	}
+	for b := range m.Blocks {
+		if m.Blocks[b].Bounds != nil {
+			see(m.Blocks[b].Bounds.Lower)
+			see(m.Blocks[b].Bounds.Upper)
+		}
+	}
+	return 1 + n
 }
 
 // multiplierDistance is how far a constraint's multiplier is from its dual cone.

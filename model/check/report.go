@@ -45,6 +45,11 @@ const (
 	contradiction = 1e3
 	// secondary times the tolerance is allowed in what adds up several residuals: claimed values, prices.
 	secondary = 10
+	// A point (or multipliers) larger than growth times the model's own numbers, whose violation times its size, both in
+	// units of those numbers, exceeds growthProduct, gets its feasibility from its size: so do points of weakly infeasible
+	// models and multipliers across a duality gap.
+	growth        = 1e5
+	growthProduct = 1e-2
 	// certificateProduct bounds residual times size of a certificate of value 1 (see the package comment).
 	certificateProduct = 1e-4
 	// certificateSize bounds the size of a certificate of value 1: beyond it rounding of the data alone could undo it.

@@ -465,15 +465,17 @@ func (x *SubmitJobResponse) GetJob() *Job {
 	return nil
 }
 
-// UploadModelRequest is one message of a model's stream: first the head, then the chunks of its arrays.
+// UploadModelRequest is one message of a model's stream: first the head, which may go on in further messages, then the
+// chunks of its arrays.
 type UploadModelRequest struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// Head or chunk.
+	// Head, more of the head, or chunk.
 	//
 	// Types that are valid to be assigned to Part:
 	//
 	//	*UploadModelRequest_Head
 	//	*UploadModelRequest_Chunk
+	//	*UploadModelRequest_More
 	Part          isUploadModelRequest_Part `protobuf_oneof:"part"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
@@ -534,6 +536,15 @@ func (x *UploadModelRequest) GetChunk() *Chunk {
 	return nil
 }
 
+func (x *UploadModelRequest) GetMore() *Model {
+	if x != nil {
+		if x, ok := x.Part.(*UploadModelRequest_More); ok {
+			return x.More
+		}
+	}
+	return nil
+}
+
 type isUploadModelRequest_Part interface {
 	isUploadModelRequest_Part()
 }
@@ -548,9 +559,16 @@ type UploadModelRequest_Chunk struct {
 	Chunk *Chunk `protobuf:"bytes,2,opt,name=chunk,proto3,oneof"`
 }
 
+type UploadModelRequest_More struct {
+	// More of a head that does not fit into one message: merged into it, so that blocks and constraints are appended.
+	More *Model `protobuf:"bytes,3,opt,name=more,proto3,oneof"`
+}
+
 func (*UploadModelRequest_Head) isUploadModelRequest_Part() {}
 
 func (*UploadModelRequest_Chunk) isUploadModelRequest_Part() {}
+
+func (*UploadModelRequest_More) isUploadModelRequest_Part() {}
 
 // UploadModelResponse names the uploaded model.
 type UploadModelResponse struct {
@@ -754,15 +772,17 @@ func (x *FetchAnswerRequest) GetJobId() string {
 	return ""
 }
 
-// FetchAnswerResponse is one message of an answer's stream: first the head, then the chunks of its large arrays.
+// FetchAnswerResponse is one message of an answer's stream: first the head, which may go on in further messages, then
+// the chunks of its large arrays.
 type FetchAnswerResponse struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// Head or chunk.
+	// Head, more of the head, or chunk.
 	//
 	// Types that are valid to be assigned to Part:
 	//
 	//	*FetchAnswerResponse_Head
 	//	*FetchAnswerResponse_Chunk
+	//	*FetchAnswerResponse_More
 	Part          isFetchAnswerResponse_Part `protobuf_oneof:"part"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
@@ -823,6 +843,15 @@ func (x *FetchAnswerResponse) GetChunk() *Chunk {
 	return nil
 }
 
+func (x *FetchAnswerResponse) GetMore() *Answer {
+	if x != nil {
+		if x, ok := x.Part.(*FetchAnswerResponse_More); ok {
+			return x.More
+		}
+	}
+	return nil
+}
+
 type isFetchAnswerResponse_Part interface {
 	isFetchAnswerResponse_Part()
 }
@@ -837,16 +866,25 @@ type FetchAnswerResponse_Chunk struct {
 	Chunk *Chunk `protobuf:"bytes,2,opt,name=chunk,proto3,oneof"`
 }
 
+type FetchAnswerResponse_More struct {
+	// More of a head that does not fit into one message: merged into it, so that values, multipliers and residuals are
+	// appended.
+	More *Answer `protobuf:"bytes,3,opt,name=more,proto3,oneof"`
+}
+
 func (*FetchAnswerResponse_Head) isFetchAnswerResponse_Part() {}
 
 func (*FetchAnswerResponse_Chunk) isFetchAnswerResponse_Part() {}
+
+func (*FetchAnswerResponse_More) isFetchAnswerResponse_Part() {}
 
 // WatchJobRequest asks for a job's events.
 type WatchJobRequest struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// The job.
 	JobId string `protobuf:"bytes,1,opt,name=job_id,json=jobId,proto3" json:"job_id,omitempty"`
-	// Only events after this sequence number; 0 for all that are kept.
+	// Only events after this sequence number, which an earlier event of the job had; 0 for all that are kept: every change
+	// of state, and the latest progress.
 	AfterSequence uint64 `protobuf:"varint,2,opt,name=after_sequence,json=afterSequence,proto3" json:"after_sequence,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
@@ -899,7 +937,7 @@ func (x *WatchJobRequest) GetAfterSequence() uint64 {
 // WatchJobResponse is one event of a job.
 type WatchJobResponse struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// Rises by at least one from event to event.
+	// Rises by at least one from event to event; idle events repeat the last.
 	Sequence uint64 `protobuf:"varint,1,opt,name=sequence,proto3" json:"sequence,omitempty"`
 	// When it happened.
 	Time *timestamppb.Timestamp `protobuf:"bytes,2,opt,name=time,proto3" json:"time,omitempty"`
@@ -998,7 +1036,7 @@ type isWatchJobResponse_Event interface {
 }
 
 type WatchJobResponse_Job struct {
-	// The job's state changed; also the first event of every stream.
+	// The job's state changed; also the first event of a stream from the beginning.
 	Job *Job `protobuf:"bytes,3,opt,name=job,proto3,oneof"`
 }
 
@@ -1426,10 +1464,11 @@ const file_towpath_v1_job_proto_rawDesc = "" +
 	"\x05value\x18\x02 \x01(\tR\x05value:\x028\x01B\b\n" +
 	"\x06source\"6\n" +
 	"\x11SubmitJobResponse\x12!\n" +
-	"\x03job\x18\x01 \x01(\v2\x0f.towpath.v1.JobR\x03job\"p\n" +
+	"\x03job\x18\x01 \x01(\v2\x0f.towpath.v1.JobR\x03job\"\x99\x01\n" +
 	"\x12UploadModelRequest\x12'\n" +
 	"\x04head\x18\x01 \x01(\v2\x11.towpath.v1.ModelH\x00R\x04head\x12)\n" +
-	"\x05chunk\x18\x02 \x01(\v2\x11.towpath.v1.ChunkH\x00R\x05chunkB\x06\n" +
+	"\x05chunk\x18\x02 \x01(\v2\x11.towpath.v1.ChunkH\x00R\x05chunk\x12'\n" +
+	"\x04more\x18\x03 \x01(\v2\x11.towpath.v1.ModelH\x00R\x04moreB\x06\n" +
 	"\x04part\"m\n" +
 	"\x13UploadModelResponse\x12\x19\n" +
 	"\bmodel_id\x18\x01 \x01(\tR\amodelId\x12;\n" +
@@ -1441,10 +1480,11 @@ const file_towpath_v1_job_proto_rawDesc = "" +
 	"\x0eGetJobResponse\x12!\n" +
 	"\x03job\x18\x01 \x01(\v2\x0f.towpath.v1.JobR\x03job\"+\n" +
 	"\x12FetchAnswerRequest\x12\x15\n" +
-	"\x06job_id\x18\x01 \x01(\tR\x05jobId\"r\n" +
+	"\x06job_id\x18\x01 \x01(\tR\x05jobId\"\x9c\x01\n" +
 	"\x13FetchAnswerResponse\x12(\n" +
 	"\x04head\x18\x01 \x01(\v2\x12.towpath.v1.AnswerH\x00R\x04head\x12)\n" +
-	"\x05chunk\x18\x02 \x01(\v2\x11.towpath.v1.ChunkH\x00R\x05chunkB\x06\n" +
+	"\x05chunk\x18\x02 \x01(\v2\x11.towpath.v1.ChunkH\x00R\x05chunk\x12(\n" +
+	"\x04more\x18\x03 \x01(\v2\x12.towpath.v1.AnswerH\x00R\x04moreB\x06\n" +
 	"\x04part\"O\n" +
 	"\x0fWatchJobRequest\x12\x15\n" +
 	"\x06job_id\x18\x01 \x01(\tR\x05jobId\x12%\n" +
@@ -1565,39 +1605,41 @@ var file_towpath_v1_job_proto_depIdxs = []int32{
 	2,  // 13: towpath.v1.SubmitJobResponse.job:type_name -> towpath.v1.Job
 	27, // 14: towpath.v1.UploadModelRequest.head:type_name -> towpath.v1.Model
 	28, // 15: towpath.v1.UploadModelRequest.chunk:type_name -> towpath.v1.Chunk
-	22, // 16: towpath.v1.UploadModelResponse.expire_time:type_name -> google.protobuf.Timestamp
-	29, // 17: towpath.v1.GetJobRequest.wait:type_name -> google.protobuf.Duration
-	2,  // 18: towpath.v1.GetJobResponse.job:type_name -> towpath.v1.Job
-	30, // 19: towpath.v1.FetchAnswerResponse.head:type_name -> towpath.v1.Answer
-	28, // 20: towpath.v1.FetchAnswerResponse.chunk:type_name -> towpath.v1.Chunk
-	22, // 21: towpath.v1.WatchJobResponse.time:type_name -> google.protobuf.Timestamp
-	2,  // 22: towpath.v1.WatchJobResponse.job:type_name -> towpath.v1.Job
-	14, // 23: towpath.v1.WatchJobResponse.progress:type_name -> towpath.v1.Progress
-	13, // 24: towpath.v1.WatchJobResponse.idle:type_name -> towpath.v1.Idle
-	29, // 25: towpath.v1.Progress.elapsed:type_name -> google.protobuf.Duration
-	2,  // 26: towpath.v1.WithdrawJobResponse.job:type_name -> towpath.v1.Job
-	0,  // 27: towpath.v1.ListJobsRequest.states:type_name -> towpath.v1.JobState
-	21, // 28: towpath.v1.ListJobsRequest.labels:type_name -> towpath.v1.ListJobsRequest.LabelsEntry
-	2,  // 29: towpath.v1.ListJobsResponse.jobs:type_name -> towpath.v1.Job
-	3,  // 30: towpath.v1.JobService.SubmitJob:input_type -> towpath.v1.SubmitJobRequest
-	5,  // 31: towpath.v1.JobService.UploadModel:input_type -> towpath.v1.UploadModelRequest
-	7,  // 32: towpath.v1.JobService.GetJob:input_type -> towpath.v1.GetJobRequest
-	9,  // 33: towpath.v1.JobService.FetchAnswer:input_type -> towpath.v1.FetchAnswerRequest
-	11, // 34: towpath.v1.JobService.WatchJob:input_type -> towpath.v1.WatchJobRequest
-	15, // 35: towpath.v1.JobService.WithdrawJob:input_type -> towpath.v1.WithdrawJobRequest
-	17, // 36: towpath.v1.JobService.ListJobs:input_type -> towpath.v1.ListJobsRequest
-	4,  // 37: towpath.v1.JobService.SubmitJob:output_type -> towpath.v1.SubmitJobResponse
-	6,  // 38: towpath.v1.JobService.UploadModel:output_type -> towpath.v1.UploadModelResponse
-	8,  // 39: towpath.v1.JobService.GetJob:output_type -> towpath.v1.GetJobResponse
-	10, // 40: towpath.v1.JobService.FetchAnswer:output_type -> towpath.v1.FetchAnswerResponse
-	12, // 41: towpath.v1.JobService.WatchJob:output_type -> towpath.v1.WatchJobResponse
-	16, // 42: towpath.v1.JobService.WithdrawJob:output_type -> towpath.v1.WithdrawJobResponse
-	18, // 43: towpath.v1.JobService.ListJobs:output_type -> towpath.v1.ListJobsResponse
-	37, // [37:44] is the sub-list for method output_type
-	30, // [30:37] is the sub-list for method input_type
-	30, // [30:30] is the sub-list for extension type_name
-	30, // [30:30] is the sub-list for extension extendee
-	0,  // [0:30] is the sub-list for field type_name
+	27, // 16: towpath.v1.UploadModelRequest.more:type_name -> towpath.v1.Model
+	22, // 17: towpath.v1.UploadModelResponse.expire_time:type_name -> google.protobuf.Timestamp
+	29, // 18: towpath.v1.GetJobRequest.wait:type_name -> google.protobuf.Duration
+	2,  // 19: towpath.v1.GetJobResponse.job:type_name -> towpath.v1.Job
+	30, // 20: towpath.v1.FetchAnswerResponse.head:type_name -> towpath.v1.Answer
+	28, // 21: towpath.v1.FetchAnswerResponse.chunk:type_name -> towpath.v1.Chunk
+	30, // 22: towpath.v1.FetchAnswerResponse.more:type_name -> towpath.v1.Answer
+	22, // 23: towpath.v1.WatchJobResponse.time:type_name -> google.protobuf.Timestamp
+	2,  // 24: towpath.v1.WatchJobResponse.job:type_name -> towpath.v1.Job
+	14, // 25: towpath.v1.WatchJobResponse.progress:type_name -> towpath.v1.Progress
+	13, // 26: towpath.v1.WatchJobResponse.idle:type_name -> towpath.v1.Idle
+	29, // 27: towpath.v1.Progress.elapsed:type_name -> google.protobuf.Duration
+	2,  // 28: towpath.v1.WithdrawJobResponse.job:type_name -> towpath.v1.Job
+	0,  // 29: towpath.v1.ListJobsRequest.states:type_name -> towpath.v1.JobState
+	21, // 30: towpath.v1.ListJobsRequest.labels:type_name -> towpath.v1.ListJobsRequest.LabelsEntry
+	2,  // 31: towpath.v1.ListJobsResponse.jobs:type_name -> towpath.v1.Job
+	3,  // 32: towpath.v1.JobService.SubmitJob:input_type -> towpath.v1.SubmitJobRequest
+	5,  // 33: towpath.v1.JobService.UploadModel:input_type -> towpath.v1.UploadModelRequest
+	7,  // 34: towpath.v1.JobService.GetJob:input_type -> towpath.v1.GetJobRequest
+	9,  // 35: towpath.v1.JobService.FetchAnswer:input_type -> towpath.v1.FetchAnswerRequest
+	11, // 36: towpath.v1.JobService.WatchJob:input_type -> towpath.v1.WatchJobRequest
+	15, // 37: towpath.v1.JobService.WithdrawJob:input_type -> towpath.v1.WithdrawJobRequest
+	17, // 38: towpath.v1.JobService.ListJobs:input_type -> towpath.v1.ListJobsRequest
+	4,  // 39: towpath.v1.JobService.SubmitJob:output_type -> towpath.v1.SubmitJobResponse
+	6,  // 40: towpath.v1.JobService.UploadModel:output_type -> towpath.v1.UploadModelResponse
+	8,  // 41: towpath.v1.JobService.GetJob:output_type -> towpath.v1.GetJobResponse
+	10, // 42: towpath.v1.JobService.FetchAnswer:output_type -> towpath.v1.FetchAnswerResponse
+	12, // 43: towpath.v1.JobService.WatchJob:output_type -> towpath.v1.WatchJobResponse
+	16, // 44: towpath.v1.JobService.WithdrawJob:output_type -> towpath.v1.WithdrawJobResponse
+	18, // 45: towpath.v1.JobService.ListJobs:output_type -> towpath.v1.ListJobsResponse
+	39, // [39:46] is the sub-list for method output_type
+	32, // [32:39] is the sub-list for method input_type
+	32, // [32:32] is the sub-list for extension type_name
+	32, // [32:32] is the sub-list for extension extendee
+	0,  // [0:32] is the sub-list for field type_name
 }
 
 func init() { file_towpath_v1_job_proto_init() }
@@ -1616,10 +1658,12 @@ func file_towpath_v1_job_proto_init() {
 	file_towpath_v1_job_proto_msgTypes[4].OneofWrappers = []any{
 		(*UploadModelRequest_Head)(nil),
 		(*UploadModelRequest_Chunk)(nil),
+		(*UploadModelRequest_More)(nil),
 	}
 	file_towpath_v1_job_proto_msgTypes[9].OneofWrappers = []any{
 		(*FetchAnswerResponse_Head)(nil),
 		(*FetchAnswerResponse_Chunk)(nil),
+		(*FetchAnswerResponse_More)(nil),
 	}
 	file_towpath_v1_job_proto_msgTypes[11].OneofWrappers = []any{
 		(*WatchJobResponse_Job)(nil),
