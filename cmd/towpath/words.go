@@ -1,0 +1,84 @@
+package main
+
+import (
+	"fmt"
+	"math"
+	"strings"
+	"time"
+
+	towpathv1 "towpath/proto/towpath/v1"
+
+	"google.golang.org/protobuf/reflect/protoreflect"
+)
+
+// word turns an enum value of the wire contract into the word used everywhere else: OUTCOME_OPTIMAL is "optimal".
+func word(e protoreflect.Enum, prefix string) string {
+	v := e.Descriptor().Values().ByNumber(e.Number())
+	if v == nil {
+		return fmt.Sprintf("unknown (%d)", e.Number())
+	}
+	return strings.ReplaceAll(strings.ToLower(strings.TrimPrefix(string(v.Name()), prefix)), "_", " ")
+}
+
+func outcomeWord(o towpathv1.Outcome) string     { return word(o, "OUTCOME_") }
+func verdictWord(v towpathv1.Verdict) string     { return word(v, "VERDICT_") }
+func stateWord(s towpathv1.JobState) string      { return word(s, "JOB_STATE_") }
+func fieldWord(f towpathv1.Field) string         { return word(f, "FIELD_") }
+func exactnessWord(e towpathv1.Exactness) string { return word(e, "EXACTNESS_") }
+
+// shownDigits is what people compare at a glance; fullDigits, for --values and --multipliers, tells numbers apart that
+// differ by little more than rounding.
+const (
+	shownDigits = 6
+	fullDigits  = 16
+)
+
+func numberText(z complex128, digits int) string {
+	re, im := real(z), imag(z)
+	if im == 0 {
+		return fmt.Sprintf("%.*g", digits, re)
+	}
+	return fmt.Sprintf("%.*g%+.*gi", digits, re, digits, im)
+}
+
+// residualText shows a residual: its size matters, not its digits.
+func residualText(x *float64) string {
+	if x == nil {
+		return "-"
+	}
+	return fmt.Sprintf("%.1e", *x)
+}
+
+func valueText(x *float64) string {
+	if x == nil || math.IsNaN(*x) {
+		return "-"
+	}
+	return fmt.Sprintf("%.10g", *x)
+}
+
+// secondsText rounds a time to what one run can tell.
+func secondsText(s float64) string {
+	switch {
+	case math.IsNaN(s):
+		return "-"
+	case s < 0.0995:
+		return fmt.Sprintf("%.2g ms", s*1e3)
+	case s < 100:
+		return fmt.Sprintf("%.2g s", s)
+	}
+	return time.Duration(s * float64(time.Second)).Round(time.Second).String()
+}
+
+func bytesText(b float64) string {
+	const kibi = 1024
+	units := []string{"B", "KiB", "MiB", "GiB", "TiB"}
+	k := 0
+	for b >= kibi && k < len(units)-1 {
+		b /= kibi
+		k++
+	}
+	if b >= 100 {
+		return fmt.Sprintf("%.0f %s", b, units[k])
+	}
+	return fmt.Sprintf("%.3g %s", b, units[k])
+}
