@@ -176,9 +176,9 @@ func TestArraysWithAndWithoutSharing(t *testing.T) {
 
 // The same model has the same name in both forms; every change of a number, a place or a word gives another.
 func TestModelID(t *testing.T) {
-	make := func() *model.Model { return sample(rand.New(rand.NewPCG(3, 3)), 3) }
-	p := ModelToProto(make())
-	for k, c := range make().Constraints { // the same in compressed rows
+	fresh := func() *model.Model { return sample(rand.New(rand.NewPCG(3, 3)), 3) }
+	p := ModelToProto(fresh())
+	for k, c := range fresh().Constraints { // the same in compressed rows
 		p.Constraints[k].Terms = nil
 		p.Constraints[k].Coefficients = matrixToProto(&c.Map.Lin)
 		if c.Map.Conj != nil {
@@ -189,11 +189,11 @@ func TestModelID(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	base := ModelID(make())
+	base := ModelID(fresh())
 	if ModelID(compressed) != base {
 		t.Error("terms and compressed rows have different names")
 	}
-	empty := make()
+	empty := fresh()
 	empty.Constraints[0].Map.Conj = &model.Matrix{Start: []int{0, 0, 0, 0}}
 	if ModelID(empty) != base {
 		t.Error("no coefficients on conjugates have another name than none")
@@ -222,7 +222,7 @@ func TestModelID(t *testing.T) {
 		{"a limit", func(m *model.Model) { m.Constraints[7].Cone.Upper[0] += 1 }},
 		{"one constraint less", func(m *model.Model) { m.Constraints = m.Constraints[:7] }},
 	} {
-		m := make()
+		m := fresh()
 		c.change(m)
 		id := ModelID(m)
 		if other, ok := seen[id]; ok {
