@@ -154,38 +154,6 @@ func TestStandardInputAndBinary(t *testing.T) {
 	}
 }
 
-// The same little problems in the trade's formats, made up here.
-const (
-	// minimize 3x + 2y subject to x + y >= 4, x + 3y >= 6, y <= 2.5: the boats again.
-	boatsMPS = `NAME          BOATS
-ROWS
- N  COST
- G  FUEL
- G  GOODS
-COLUMNS
-    X         COST               3.0   FUEL               1.0
-    X         GOODS              1.0
-    Y         COST               2.0   FUEL               1.0
-    Y         GOODS              3.0
-RHS
-    RHS       FUEL               4.0   GOODS              6.0
-BOUNDS
- UP BND       X                  3.0
- UP BND       Y                  2.5
-ENDATA
-`
-	// minimize x1 + x2 subject to [[x1, 1], [1, x2]] positive semidefinite: 2, at x1 = x2 = 1.
-	pairSDPA = `"two numbers whose product is at least one
-2
-1
-2
-1.0 1.0
-0 1 1 2 -1.0
-1 1 1 1 1.0
-2 1 2 2 1.0
-`
-)
-
 func TestUnreadableModelsAreExplained(t *testing.T) {
 	for _, c := range []struct {
 		name, text string
