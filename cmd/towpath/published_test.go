@@ -93,7 +93,7 @@ func solveRelaxation(t *testing.T, b *broker, n *grid.Network, r grid.Relaxation
 	}
 	t.Logf("%v: %s %.10g by %s in %s, %d iterations, %s", r, outcomeWord(a.GetOutcome()), a.GetObjective(), a.GetRoute().GetSheet(),
 		durationText(a.GetTimings().GetSolved()), a.GetIterations(), verdictWord(a.GetExamination().GetVerdict()))
-	if !holds(a) {
+	if verdictWord(a.GetExamination().GetVerdict()) != "checked" { // the examination decides, also of an answer that its back end calls inaccurate
 		t.Errorf("%v: %s, %s %v", r, outcomeWord(a.GetOutcome()), verdictWord(a.GetExamination().GetVerdict()), a.GetExamination().GetReasons())
 	}
 	if want != nil && math.Abs(a.GetObjective()-*want) > boundTolerance**want {
