@@ -1,0 +1,153 @@
+package broker
+
+import (
+	"context"
+	"sync"
+	"testing"
+	"time"
+
+	"towpath/backends"
+	"towpath/model"
+	towpathv1 "towpath/proto/towpath/v1"
+
+	"google.golang.org/grpc/codes"
+	"google.golang.org/grpc/health/grpc_health_v1"
+	"google.golang.org/grpc/status"
+	"google.golang.org/protobuf/types/known/durationpb"
+)
+
+// serving asks the health service about the whole server.
+func (s *station) serving() grpc_health_v1.HealthCheckResponse_ServingStatus {
+	s.t.Helper()
+	r, err := grpc_health_v1.NewHealthClient(s.conn).Check(s.ctx(), &grpc_health_v1.HealthCheckRequest{})
+	if err != nil {
+		s.t.Fatal(err)
+	}
+	return r.GetStatus()
+}
+
+// A drain in order: not serving, no new jobs, waiting jobs fail at once, the running one finishes, streams end.
+func TestDrain(t *testing.T) {
+	h := newHanging()
+	s := newStation(t, Config{Workers: 1, Grace: patience}, &puppet{"tug", 1, h.solve})
+	if got := s.serving(); got != grpc_health_v1.HealthCheckResponse_SERVING {
+		t.Errorf("before: %v", got)
+	}
+	running := s.submit(smallest(), nil)
+	s.signal(h.began, "the solve")
+	waiting := s.submit(smallest(), nil)
+	watched := make(chan error, 1)
+	var states []towpathv1.JobState
+	go func() {
+		events, err := s.watch(running, 0)
+		states = statesOf(events)
+		watched <- err
+	}()
+	var stops sync.WaitGroup
+	for range 2 { // twice at once, and a third time by the test's end
+		stops.Go(s.server.Stop)
+	}
+	job := s.wait(waiting, towpathv1.JobState_JOB_STATE_FAILED)
+	if job.GetFault().GetReason() != "DRAINED" {
+		t.Errorf("fault %v", job.GetFault())
+	}
+	if got := s.serving(); got != grpc_health_v1.HealthCheckResponse_NOT_SERVING {
+		t.Errorf("while draining: %v", got)
+	}
+	_, err := s.try(smallest(), nil)
+	refused(t, err, codes.Unavailable, Draining, "the server is stopping; try again")
+	close(h.finish)
+	if err := <-watched; err != nil {
+		t.Errorf("the stream ended with %v", err)
+	}
+	if states[len(states)-1] != towpathv1.JobState_JOB_STATE_ANSWERED {
+		t.Errorf("the last state seen is %v", states[len(states)-1])
+	}
+	stops.Wait()
+	s.server.Stop()
+}
+
+// A solve that outlasts the grace is stopped; whoever waits or watches learns how the job ended.
+func TestDrainStopsWhatTakesTooLong(t *testing.T) {
+	h := newHanging()
+	s := newStation(t, Config{Grace: 20 * time.Millisecond}, &puppet{"tug", 1, h.solve})
+	id := s.submit(smallest(), nil)
+	s.signal(h.began, "the solve")
+	got := make(chan *towpathv1.Job, 1)
+	go func() {
+		r, _ := s.jobs.GetJob(s.ctx(), &towpathv1.GetJobRequest{JobId: id, Wait: durationpb.New(time.Minute)})
+		got <- r.GetJob()
+	}()
+	watched := make(chan []*towpathv1.WatchJobResponse, 1)
+	go func() {
+		events, _ := s.watch(id, 0)
+		watched <- events
+	}()
+	// Both must be on the server before it stops: they are when the job's log of calls says nothing, so ask once more.
+	s.job(id)
+	time.Sleep(10 * time.Millisecond)
+	s.server.Stop()
+	s.signal(h.ended, "the end of the solve")
+	if job := <-got; job.GetState() != towpathv1.JobState_JOB_STATE_FAILED || job.GetFault().GetReason() != "DRAINED" {
+		t.Errorf("the waiting caller sees %v %v", job.GetState(), job.GetFault())
+	}
+	states := statesOf(<-watched)
+	if len(states) == 0 || states[len(states)-1] != towpathv1.JobState_JOB_STATE_FAILED {
+		t.Errorf("the watcher saw %v", states)
+	}
+}
+
+// A back end that does not obey delays the stop, but does not prevent it; its job fails all the same.
+func TestDrainPassesDeafBackEnds(t *testing.T) {
+	if testing.Short() {
+		t.Skip("waits for the patience with back ends to run out")
+	}
+	began, let := make(chan struct{}), make(chan struct{})
+	s := newStation(t, Config{Workers: 1, Grace: time.Millisecond}, &puppet{"deaf", 1, func(context.Context, *model.Model, backends.Options) (*model.Answer, error) {
+		close(began)
+		<-let
+		return right(), nil
+	}})
+	id := s.submit(smallest(), nil)
+	s.signal(began, "the solve")
+	events := make(chan []*towpathv1.WatchJobResponse, 1)
+	go func() {
+		e, _ := s.watch(id, 0)
+		events <- e
+	}()
+	start := time.Now()
+	s.server.Stop()
+	if took := time.Since(start); took > deaf+closing+2*time.Second {
+		t.Errorf("stopping took %v", took)
+	}
+	states := statesOf(<-events)
+	if len(states) == 0 || states[len(states)-1] != towpathv1.JobState_JOB_STATE_FAILED {
+		t.Errorf("the watcher saw %v", states)
+	}
+	if s.log.FilterMessage("a back end goes on although it was told to stop").Len() != 1 {
+		t.Error("the log does not say why stopping took so long")
+	}
+	close(let)
+}
+
+// An idle broker stops at once, and an upload that goes on does not hold it up.
+func TestDrainEndsUploads(t *testing.T) {
+	s := newStation(t, Config{}, &puppet{"tug", 1, honestly})
+	stream, err := s.jobs.UploadModel(s.ctx())
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := stream.Send(&towpathv1.UploadModelRequest{Part: &towpathv1.UploadModelRequest_Head{Head: smallest()}}); err != nil {
+		t.Fatal(err)
+	}
+	s.answer(smallest(), nil) // the upload's call has reached the server before
+	start := time.Now()
+	s.server.Stop()
+	if took := time.Since(start); took > closing/2 {
+		t.Errorf("stopping took %v", took)
+	}
+	_, err = stream.CloseAndRecv()
+	if code := status.Code(err); code != codes.Unavailable {
+		t.Errorf("the upload ended with %v", err)
+	}
+}
