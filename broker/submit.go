@@ -27,9 +27,8 @@ func (b *Broker) submit(ctx context.Context, q *towpathv1.SubmitJobRequest) (job
 	}
 	id := unique.String()
 	if q.GetRequestId() != "" {
-		earlier, err := b.claimRequest(ctx, q, id)
-		if err != nil || earlier != nil {
-			return earlier, err
+		if job, err = b.claimRequest(ctx, q, id); err != nil || job != nil {
+			return job, err
 		}
 		defer func() {
 			if err != nil {
