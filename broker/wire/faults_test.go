@@ -170,6 +170,9 @@ func TestFaultsLeftToTheModel(t *testing.T) {
 
 // A small message cannot ask for much memory, however often it asks for what is allowed once.
 func TestSmallMessagesStaySmall(t *testing.T) {
+	if testing.Short() {
+		t.Skip("takes all the memory that is allowed")
+	}
 	bounded := &towpathv1.Model{}
 	for range 2000 {
 		bounded.Blocks = append(bounded.Blocks, &towpathv1.Block{Field: towpathv1.Field_FIELD_REAL, Rows: 1 << 20, Lower: &towpathv1.Numbers{Re: []float64{0}}})

@@ -66,8 +66,8 @@ func TestHeadsInPieces(t *testing.T) {
 	m := &towpathv1.Model{Name: "many", Objective: &towpathv1.Objective{Constant: 3}}
 	a := &towpathv1.Answer{Note: "many", Multipliers: &towpathv1.Multipliers{}, Examination: &towpathv1.Examination{Reasons: []string{"one", "two"}},
 		Certificate: &towpathv1.Certificate{Proof: &towpathv1.Certificate_Infeasibility{Infeasibility: &towpathv1.Multipliers{}}}}
-	for k := range 70_000 {
-		name := strings.Repeat("n", 50)
+	name := strings.Repeat("n", 200)
+	for k := range 15_000 {
 		m.Blocks = append(m.Blocks, &towpathv1.Block{Name: name, Rows: uint64(k)})
 		y := &towpathv1.RowMultipliers{Name: name, Rows: uint64(k), Values: &towpathv1.Numbers{Re: []float64{float64(k)}}}
 		a.Multipliers.Constraints = append(a.Multipliers.Constraints, y)
