@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"strings"
 	"time"
 
 	"towpath/broker/store"
@@ -61,23 +62,59 @@ func refuse(code codes.Code, reason Reason, format string, a ...any) *refusal {
 	return &refusal{code: code, reason: reason, text: fmt.Sprintf(format, a...)}
 }
 
-// shownFaults keeps error details within what HTTP/2 trailers usually carry.
-const shownFaults = 20
+// Errors travel in HTTP/2 trailers, which many peers limit to 8 KiB, details in base64. What does not fit is left out.
+const (
+	shownFaults = 20
+	shownBytes  = 3 << 10 // of violations
+	shownText   = 2 << 10 // bytes of a message; also of a fault kept with a job
+)
+
+// clip makes text from anywhere fit for messages: valid UTF-8 of bounded length.
+func clip(text string) string {
+	text = strings.ToValidUTF8(text, "?")
+	if len(text) <= shownText {
+		return text
+	}
+	return strings.ToValidUTF8(text[:shownText], "") + "..."
+}
+
+// listed gives the faults one per line, as many as fit, and how many more there are.
+func listed(e *model.FaultError) string {
+	text := ""
+	for k, f := range e.Faults {
+		line := clip(f.String())
+		if k > 0 && len(text)+len(line) > shownText-100 {
+			return text + fmt.Sprintf("\nand %d more faults", len(e.Faults)-k+e.More)
+		}
+		if k > 0 {
+			text += "\n"
+		}
+		text += line
+	}
+	if e.More > 0 {
+		text += fmt.Sprintf("\nand %d more faults", e.More)
+	}
+	return text
+}
 
 // GRPCStatus makes the status that goes out: ErrorInfo always, BadRequest for faults, RetryInfo where a retry makes sense.
 func (r *refusal) GRPCStatus() *status.Status {
 	details := []protoadapt.MessageV1{&errdetails.ErrorInfo{Reason: string(r.reason), Domain: domain}}
 	if len(r.faults) > 0 {
 		bad := &errdetails.BadRequest{}
+		bytes := 0
 		for _, f := range r.faults[:min(len(r.faults), shownFaults)] {
-			bad.FieldViolations = append(bad.FieldViolations, &errdetails.BadRequest_FieldViolation{Field: f.Path, Description: f.String()})
+			if bytes += len(f.Path) + len(f.String()); bytes > shownBytes && len(bad.FieldViolations) > 0 {
+				break
+			}
+			bad.FieldViolations = append(bad.FieldViolations, &errdetails.BadRequest_FieldViolation{Field: f.Path, Description: clip(f.String())})
 		}
 		details = append(details, bad)
 	}
 	if r.retry > 0 {
 		details = append(details, &errdetails.RetryInfo{RetryDelay: durationpb.New(r.retry)})
 	}
-	s := status.New(r.code, r.text)
+	s := status.New(r.code, clip(r.text))
 	if with, err := s.WithDetails(details...); err == nil {
 		return with
 	}
@@ -96,7 +133,7 @@ func statusOf(err error) error {
 	case errors.As(err, &r):
 		return r.GRPCStatus().Err()
 	case errors.As(err, &faults):
-		return (&refusal{code: codes.InvalidArgument, reason: ModelInvalid, text: faults.Error(), faults: faults.Faults}).GRPCStatus().Err()
+		return (&refusal{code: codes.InvalidArgument, reason: ModelInvalid, text: listed(faults), faults: faults.Faults}).GRPCStatus().Err()
 	case errors.As(err, &stream):
 		return (&refusal{code: codes.InvalidArgument, reason: UploadBroken, text: stream.Error(), faults: []model.Fault{stream.Fault}}).GRPCStatus().Err()
 	case errors.As(err, &large):

@@ -7,6 +7,7 @@ import (
 	"slices"
 	"time"
 
+	"towpath/broker/store"
 	"towpath/broker/wire"
 	towpathv1 "towpath/proto/towpath/v1"
 
@@ -94,6 +95,11 @@ func (s *jobService) FetchAnswer(q *towpathv1.FetchAnswerRequest, stream grpc.Se
 		return refuse(codes.FailedPrecondition, NoAnswer, "job '%s' is %s and has no answer: %s", q.GetJobId(), word(r.Job.GetState()), why)
 	}
 	raw, err := s.b.blobs.Get(ctx, r.Answer)
+	if errors.Is(err, store.ErrMissing) {
+		if _, _, gone := s.b.get(ctx, q.GetJobId()); gone != nil { // forgotten meanwhile
+			return gone
+		}
+	}
 	if err != nil {
 		return err
 	}

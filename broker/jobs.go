@@ -109,7 +109,7 @@ func (b *Broker) forgetOldest() {
 func (b *Broker) settle(id string, state towpathv1.JobState, reason Reason, text string) (*record, error) {
 	r, err := b.change(id, func(r *record) {
 		r.Job.State = state
-		r.Job.Fault = &towpathv1.Fault{Reason: string(reason), Message: text}
+		r.Job.Fault = &towpathv1.Fault{Reason: string(reason), Message: clip(text)}
 	})
 	if err != nil {
 		return r, err

@@ -88,15 +88,15 @@ func TestOldJobsAreForgotten(t *testing.T) {
 		ids = append(ids, r.GetJob().GetId())
 		s.wait(ids[k], towpathv1.JobState_JOB_STATE_ANSWERED)
 	}
+	s.eventually("the state with two jobs and two requests", func() bool {
+		keys, err := s.b.records.Keys(t.Context(), "")
+		return err == nil && len(keys) == 4
+	})
 	for k, id := range ids {
 		_, err := s.fetch(id)
 		if (err == nil) != (k >= 3) {
 			t.Errorf("job %d: %v", k, err)
 		}
-	}
-	keys, err := s.b.records.Keys(t.Context(), "")
-	if err != nil || len(keys) != 4 {
-		t.Errorf("records %v (%v), want two jobs and two requests", keys, err)
 	}
 	s.b.mu.Lock()
 	defer s.b.mu.Unlock()
@@ -109,7 +109,7 @@ func TestOldJobsAreForgotten(t *testing.T) {
 func TestFullStoreMakesRoom(t *testing.T) {
 	h := newHanging()
 	close(h.finish)
-	s := newStation(t, Config{StoreLimit: 6 << 10, ModelLifetime: time.Nanosecond}, &puppet{"tug", 1, h.solve})
+	s := newStation(t, Config{StoreLimit: 10 << 10, ModelLifetime: time.Nanosecond}, &puppet{"tug", 1, h.solve})
 	var ids []string
 	for k := range 20 {
 		m := smallest()
@@ -130,8 +130,8 @@ func TestFullStoreMakesRoom(t *testing.T) {
 		t.Errorf("the last answer is gone: %v", err)
 	}
 	big := smallest()
-	big.Constraints[0].Rows = 1000
-	big.Constraints[0].Constant = &towpathv1.Numbers{F64: &towpathv1.Array{Place: &towpathv1.Array_Data{Data: make([]byte, 8000)}}}
+	big.Constraints[0].Rows = 1500
+	big.Constraints[0].Constant = &towpathv1.Numbers{F64: &towpathv1.Array{Place: &towpathv1.Array_Data{Data: make([]byte, 12_000)}}}
 	_, err := s.try(big, nil)
 	st := refused(t, err, codes.ResourceExhausted, StoreFull, "there is no room for another model or answer; try later")
 	if detail[*errdetails.RetryInfo](st) == nil {
@@ -190,12 +190,10 @@ func TestUploadedModels(t *testing.T) {
 	close(h.finish)
 	s.wait(r.GetJob().GetId(), towpathv1.JobState_JOB_STATE_ANSWERED)
 	s.wait(second.GetJob().GetId(), towpathv1.JobState_JOB_STATE_ANSWERED)
-	for deadline := time.Now().Add(patience); err == nil; {
-		if _, err = named(); time.Now().After(deadline) {
-			t.Fatal("the model is kept for ever")
-		}
-		time.Sleep(10 * time.Millisecond)
-	}
+	s.eventually("the end of the model", func() bool {
+		_, err = named()
+		return err != nil
+	})
 	refused(t, err, codes.NotFound, UnknownModel, "upload it again")
 }
 
@@ -215,32 +213,12 @@ func TestUploadsInProgressAreBounded(t *testing.T) {
 			t.Fatal(err)
 		}
 	}
-	for deadline := time.Now().Add(patience); ; time.Sleep(time.Millisecond) {
-		s.b.mu.Lock()
-		taken := s.b.uploading
-		s.b.mu.Unlock()
-		if taken > 900<<10 {
-			break
-		}
-		if time.Now().After(deadline) {
-			t.Fatal("the upload took no room")
-		}
-	}
+	s.eventually("the room that the upload takes", func() bool { return s.uploading() > 900<<10 })
 	refused(t, s.upload(head(900<<10)), codes.ResourceExhausted, StoreFull, "there is no room for 921600 more bytes of uploads; try later")
 	// The stalled one is given up, and its room is free again.
 	err = stalled.RecvMsg(&towpathv1.UploadModelResponse{})
 	refused(t, err, codes.DeadlineExceeded, UploadBroken, "nothing came for 50ms; upload again, without pauses")
-	for deadline := time.Now().Add(patience); ; time.Sleep(time.Millisecond) {
-		s.b.mu.Lock()
-		taken := s.b.uploading
-		s.b.mu.Unlock()
-		if taken == 0 {
-			break
-		}
-		if time.Now().After(deadline) {
-			t.Fatalf("%d bytes are still taken", taken)
-		}
-	}
+	s.eventually("the room given back", func() bool { return s.uploading() == 0 })
 	refused(t, s.upload(head(900<<10)), codes.InvalidArgument, UploadBroken, "array 1: it ends after 0 of 921600 bytes")
 }
 

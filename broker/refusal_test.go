@@ -5,9 +5,11 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 	"testing"
 	"time"
+	"unicode/utf8"
 
 	"towpath/backends"
 	"towpath/capability"
@@ -18,6 +20,7 @@ import (
 	"google.golang.org/genproto/googleapis/rpc/errdetails"
 	"google.golang.org/grpc"
 	"google.golang.org/grpc/codes"
+	"google.golang.org/grpc/status"
 	"google.golang.org/protobuf/proto"
 	"google.golang.org/protobuf/types/known/durationpb"
 )
@@ -171,8 +174,45 @@ func TestManyFaultsMakeASmallError(t *testing.T) {
 	if n := len(detail[*errdetails.BadRequest](st).GetFieldViolations()); n < 10 || n > shownFaults {
 		t.Errorf("%d violations", n)
 	}
-	if n := proto.Size(st.Proto()); n > 8<<10 {
-		t.Errorf("the error has %d bytes", n)
+	lines := strings.Split(st.Message(), "\n")
+	more := 0
+	if _, err := fmt.Sscanf(lines[len(lines)-1], "and %d more faults", &more); err != nil || len(lines)-1+more != 500 {
+		t.Errorf("%d faults are listed, then: %s", len(lines)-1, lines[len(lines)-1])
+	}
+	if n := trailerBytes(t, st); n > 8<<10 {
+		t.Errorf("the error takes %d bytes of trailers", n)
+	}
+}
+
+// trailerBytes is what a status takes in HTTP/2 trailers: the message, and all of it again in base64.
+func trailerBytes(t *testing.T, st *status.Status) int {
+	t.Helper()
+	return len(st.Message()) + proto.Size(st.Proto())*4/3
+}
+
+// Words from anywhere fit into messages and records: bounded, and valid UTF-8.
+func TestForeignWordsAreClipped(t *testing.T) {
+	noise := strings.Repeat("\xff\xfe loud \n", 10_000)
+	noted := right()
+	noted.Note = noise
+	s := newStation(t, Config{}, &puppet{"noisy", 1, answering(noted)}, &puppet{"broken", 1, func(context.Context, *model.Model, backends.Options) (*model.Answer, error) {
+		return nil, errors.New(noise)
+	}})
+	a := s.answer(smallest(), &towpathv1.JobOptions{Backends: []string{"noisy"}})
+	if n := len(a.GetNote()); n < 100 || n > shownText+10 {
+		t.Errorf("the note has %d bytes", n)
+	}
+	job := s.wait(s.submit(smallest(), &towpathv1.JobOptions{Backends: []string{"broken"}}), towpathv1.JobState_JOB_STATE_FAILED)
+	if n := len(job.GetFault().GetMessage()); n < 100 || n > shownText+10 {
+		t.Errorf("the fault has %d bytes", n)
+	}
+	_, err := s.try(smallest(), &towpathv1.JobOptions{Sheet: strings.Repeat("é", 128), Backends: slices.Repeat([]string{strings.Repeat("x", 256)}, 32)})
+	st := refused(t, err, codes.FailedPrecondition, UnknownSheet, "no back end here has sheet")
+	if n := trailerBytes(t, st); n > 8<<10 {
+		t.Errorf("the error takes %d bytes of trailers", n)
+	}
+	if got := clip(strings.Repeat("é", shownText)); !utf8.ValidString(got) || len(got) > shownText+3 {
+		t.Errorf("clipped to %d bytes", len(got))
 	}
 }
 

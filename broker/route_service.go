@@ -9,6 +9,8 @@ import (
 	"towpath/broker/wire"
 	"towpath/capability"
 	towpathv1 "towpath/proto/towpath/v1"
+
+	"google.golang.org/protobuf/proto"
 )
 
 // routeService serves towpath.v1.RouteService.
@@ -43,7 +45,31 @@ func (s *routeService) PlanRoutes(ctx context.Context, q *towpathv1.PlanRoutesRe
 		}
 		out.Proposals = append(out.Proposals, p)
 	}
+	fit(out)
 	return out, nil
+}
+
+// planBytes is what a plan may have, so that it fits into a message of gRPC's usual limit.
+const planBytes = 3 << 20
+
+// fit leaves out what a plan can do without, as far as it must: models of very many different sizes have long routes.
+func fit(r *towpathv1.PlanRoutesResponse) {
+	for _, drop := range []func(*towpathv1.Proposal){
+		func(p *towpathv1.Proposal) { p.RunnersUp = nil },
+		func(p *towpathv1.Proposal) { p.Text = "" },
+		func(p *towpathv1.Proposal) {
+			if !p.GetChosen() && p.GetRoute() != nil {
+				p.GetRoute().Legs, p.GetRoute().Load = nil, nil
+			}
+		},
+	} {
+		if proto.Size(r) <= planBytes {
+			return
+		}
+		for _, p := range r.GetProposals() {
+			drop(p)
+		}
+	}
 }
 
 // ListBackends implements towpathv1.RouteServiceServer.

@@ -15,6 +15,7 @@ import (
 	"google.golang.org/grpc/codes"
 	"google.golang.org/grpc/health/grpc_health_v1"
 	reflectionv1 "google.golang.org/grpc/reflection/grpc_reflection_v1"
+	"google.golang.org/protobuf/proto"
 )
 
 // Planning tells every sheet's route or why there is none, the chosen one first, and solves nothing.
@@ -151,5 +152,32 @@ func TestStandardServices(t *testing.T) {
 	}
 	if _, err := stream.Recv(); !errors.Is(err, io.EOF) {
 		t.Errorf("the stream ended with %v", err)
+	}
+}
+
+// A plan of very many sizes leaves out what it can do without, and keeps the chosen route.
+func TestPlansFitIntoMessages(t *testing.T) {
+	long := func() *towpathv1.Route {
+		r := &towpathv1.Route{Sheet: "s"}
+		for range 10_000 {
+			r.Legs = append(r.Legs, &towpathv1.Leg{Bridge: strings.Repeat("b", 40), Demand: &towpathv1.Demand{Kind: "block/hermitian/psd"}})
+		}
+		return r
+	}
+	r := &towpathv1.PlanRoutesResponse{}
+	for k := range 5 {
+		p := &towpathv1.Proposal{Sheet: "s", Chosen: k == 0, Text: strings.Repeat("t", 1<<20), Result: &towpathv1.Proposal_Route{Route: long()}, RunnersUp: []*towpathv1.Route{long()}}
+		r.Proposals = append(r.Proposals, p)
+	}
+	fit(r)
+	if n := proto.Size(r); n > planBytes {
+		t.Errorf("%d bytes", n)
+	}
+	if n := len(r.GetProposals()[0].GetRoute().GetLegs()); n != 10_000 || len(r.GetProposals()) != 5 {
+		t.Errorf("%d proposals, the chosen one with %d legs", len(r.GetProposals()), n)
+	}
+	small := &towpathv1.PlanRoutesResponse{Proposals: []*towpathv1.Proposal{{Text: "t", RunnersUp: []*towpathv1.Route{{}}}}}
+	if fit(small); small.GetProposals()[0].GetText() == "" || len(small.GetProposals()[0].GetRunnersUp()) != 1 {
+		t.Error("a small plan lost something")
 	}
 }

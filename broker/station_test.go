@@ -277,6 +277,23 @@ func (s *station) watch(id string, after uint64) ([]*towpathv1.WatchJobResponse,
 	}
 }
 
+// eventually waits until something holds that no signal tells of.
+func (s *station) eventually(what string, holds func() bool) {
+	s.t.Helper()
+	for deadline := time.Now().Add(patience); !holds(); time.Sleep(time.Millisecond) {
+		if time.Now().After(deadline) {
+			s.t.Fatalf("%s did not come", what)
+		}
+	}
+}
+
+// uploading returns the bytes that uploads in progress take.
+func (s *station) uploading() int64 {
+	s.b.mu.Lock()
+	defer s.b.mu.Unlock()
+	return s.b.uploading
+}
+
 func (s *station) signal(c <-chan struct{}, what string) {
 	s.t.Helper()
 	select {

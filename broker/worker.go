@@ -147,7 +147,7 @@ func (b *Broker) solve(ctx context.Context, id string, l *liveJob, m *model.Mode
 		return
 	}
 	a := best.outcome.answer
-	a.Note = withOthers(a.Note, best, tried)
+	a.Note = clip(withOthers(a.Note, best, tried))
 	a.Timings.Planned = durationpb.New(planned)
 	a.Timings.Waited = durationpb.New(r.Job.GetStartTime().AsTime().Sub(r.Job.GetSubmitTime().AsTime()))
 	b.store(id, best.outcome)

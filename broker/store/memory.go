@@ -23,6 +23,9 @@ type entry struct {
 	revision uint64
 }
 
+// blobOverhead is counted for every blob beside its bytes, so that very many small ones are bounded, too.
+const blobOverhead = 256
+
 // NewMemory returns an empty store that takes blobs of together at most limit bytes; 0 for no limit.
 func NewMemory(limit int64) *Memory {
 	return &Memory{records: map[string]entry{}, blobs: map[string][]byte{}, limit: limit, watchers: map[*watcher]struct{}{}}
@@ -122,11 +125,12 @@ func (b memoryBlobs) Put(_ context.Context, key string, value []byte) error {
 	if _, ok := m.blobs[key]; ok {
 		return nil
 	}
-	if m.limit > 0 && int64(len(value)) > m.limit-m.bytes {
+	size := int64(len(value)) + blobOverhead
+	if m.limit > 0 && size > m.limit-m.bytes {
 		return ErrFull
 	}
 	m.blobs[key] = value
-	m.bytes += int64(len(value))
+	m.bytes += size
 	return nil
 }
 
@@ -143,8 +147,10 @@ func (b memoryBlobs) Get(_ context.Context, key string) ([]byte, error) {
 func (b memoryBlobs) Delete(_ context.Context, key string) error {
 	b.m.mu.Lock()
 	defer b.m.mu.Unlock()
-	b.m.bytes -= int64(len(b.m.blobs[key]))
-	delete(b.m.blobs, key)
+	if v, ok := b.m.blobs[key]; ok {
+		b.m.bytes -= int64(len(v)) + blobOverhead
+		delete(b.m.blobs, key)
+	}
 	return nil
 }
 

@@ -2,6 +2,7 @@ package store_test
 
 import (
 	"errors"
+	"fmt"
 	"testing"
 
 	"towpath/broker/store"
@@ -16,17 +17,38 @@ func TestMemory(t *testing.T) {
 }
 
 func TestMemoryIsBounded(t *testing.T) {
-	b := store.NewMemory(10).Blobs()
-	if err := b.Put(t.Context(), "a", make([]byte, 6)); err != nil {
+	b := store.NewMemory(10_000).Blobs()
+	if err := b.Put(t.Context(), "a", make([]byte, 6000)); err != nil {
 		t.Fatal(err)
 	}
-	if err := b.Put(t.Context(), "b", make([]byte, 6)); !errors.Is(err, store.ErrFull) {
+	if err := b.Put(t.Context(), "b", make([]byte, 6000)); !errors.Is(err, store.ErrFull) {
 		t.Errorf("error %v, want full", err)
 	}
 	if err := b.Delete(t.Context(), "a"); err != nil {
 		t.Fatal(err)
 	}
-	if err := b.Put(t.Context(), "b", make([]byte, 6)); err != nil {
+	for range 2 { // what is not there gives no room
+		if err := b.Delete(t.Context(), "a"); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := b.Put(t.Context(), "b", make([]byte, 6000)); err != nil {
 		t.Errorf("room was not given back: %v", err)
+	}
+	if err := b.Put(t.Context(), "c", make([]byte, 6000)); !errors.Is(err, store.ErrFull) {
+		t.Errorf("error %v, want full", err)
+	}
+}
+
+// Very many blobs without bytes take room, too.
+func TestEmptyBlobsAreBounded(t *testing.T) {
+	b := store.NewMemory(10_000).Blobs()
+	var err error
+	n := 0
+	for ; err == nil && n < 10_000; n++ {
+		err = b.Put(t.Context(), fmt.Sprint(n), nil)
+	}
+	if !errors.Is(err, store.ErrFull) {
+		t.Errorf("%d empty blobs were taken (%v)", n, err)
 	}
 }

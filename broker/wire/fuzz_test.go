@@ -1,6 +1,7 @@
 package wire
 
 import (
+	"bytes"
 	"math/rand/v2"
 	"runtime"
 	"testing"
@@ -11,6 +12,7 @@ import (
 	"towpath/model/modeltest"
 	towpathv1 "towpath/proto/towpath/v1"
 
+	"google.golang.org/protobuf/encoding/protodelim"
 	"google.golang.org/protobuf/proto"
 )
 
@@ -76,6 +78,33 @@ func FuzzModel(f *testing.F) {
 		}
 		if ModelID(again) != ModelID(m) {
 			t.Error("a valid model changes its name when it is written and read")
+		}
+	})
+}
+
+// Whatever a stream brings: an end without a panic, and memory in proportion.
+func FuzzStream(f *testing.F) {
+	var sent bytes.Buffer
+	err := SendModel(ModelToProto(sample(rand.New(rand.NewPCG(2, 40)), 40)), func(q *towpathv1.UploadModelRequest) error {
+		_, err := protodelim.MarshalTo(&sent, q)
+		return err
+	})
+	if err != nil {
+		f.Fatal(err)
+	}
+	f.Add(sent.Bytes())
+	f.Fuzz(func(t *testing.T, raw []byte) {
+		const limit = 1 << 20
+		var before, after runtime.MemStats
+		runtime.ReadMemStats(&before)
+		in := bytes.NewReader(raw)
+		_, _ = ReceiveModel(func() (*towpathv1.UploadModelRequest, error) { // any end will do
+			q := &towpathv1.UploadModelRequest{}
+			return q, protodelim.UnmarshalFrom(in, q)
+		}, limit, noLimit)
+		runtime.ReadMemStats(&after)
+		if took, most := after.TotalAlloc-before.TotalAlloc, uint64(limit+1000*len(raw)+1<<20); took > most {
+			t.Errorf("%d bytes took %d bytes of memory, allowed %d", len(raw), took, most)
 		}
 	})
 }
