@@ -2,128 +2,308 @@ package capability
 
 import (
 	"cmp"
-	"maps"
 	"slices"
 )
 
-// node is a kind at a size.
-type node struct {
-	kind Kind
-	size int
+// most is where counts stop. A tower of rules may double counts more often than an int can bear; so many items fit into
+// no machine, and the sum over any model's demands still fits into an int.
+const most = 1 << 40
+
+func add(a, b int) int { return min(a+b, most) }
+
+func times(a, b int) int {
+	if a > 0 && b > most/a {
+		return most
+	}
+	return a * b
 }
 
-// derivation is one way of a single demand down to native kinds.
+// derivation is one way of a single item at a node down to native kinds. It never changes once made.
 type derivation struct {
-	leg       Leg
-	load      map[node]int
-	crossings int    // bridges crossed
-	name      string // ids of the bridges, for ties
-	exactness Exactness
+	at        int
+	crossed   *edge         // nil where the item is native
+	parts     []*derivation // one per part of crossed
+	load      []part        // sorted by node
+	crossings int           // bridges crossed
+	merits    merits
+	kinds     uint64 // bit k mod 64 is set if kind number k is in load
+	passes    uint64 // bit i mod 64 is set if the way passes node i
 }
 
-// frontierLimit bounds the derivations kept for one demand. The catalogue yields fewer than ten; the limit is a guard
-// against rules that nobody has written yet, and a route that met it is not called proven.
-const frontierLimit = 64
+// merits are what a derivation brings beside a small load: bit 0 says that all its bridges are exact, the others that
+// it has items of a kind without which the sheet refuses to work.
+type merits uint64
 
-// deriver finds the derivations of demands under one sheet.
+const exactMerit merits = 1
+
+// frontierLimit bounds the derivations kept at a node. The catalogue yields fewer than forty, in between and in the end; the limit guards against
+// rules that nobody has written yet, and a route that met it is not called proven.
+const frontierLimit = 96
+
+// crossingLimit bounds the bridges of one derivation, which is a tree: a chain of rules that yield two parts each grows
+// exponentially. The catalogue's longest has fewer than ten.
+const crossingLimit = 1000
+
+// passLimit bounds how often all nodes are looked at again; derivations without repetition are shorter than that.
+const passLimit = 1000
+
+// deriver finds the derivations of every node under one sheet.
+//
+// It works like the shortest-path method of Bellman and Ford (1958, from memory), with sets of derivations that no other
+// dominates in place of lengths: a node's set is made of its parts' sets, again and again until nothing changes. That
+// does not follow paths and so needs no rule against going in circles: a derivation in which a node lies below itself is
+// dominated by the one that takes the lower occurrence's way at once. Sets can improve only finitely often, for among
+// multisets of finitely many nodes there is no endless descent.
 type deriver struct {
+	*network
 	sheet  *Sheet
-	byFrom map[Kind][]Rule
+	front  [][]*derivation // by node, the best first
 	capped bool
 }
 
-// derive lists the derivations of one demand that no other dominates.
-//
-// A path does not come back to a kind at the same or a larger size. Nothing is lost: rules are monotone, so whatever
-// the larger one can become, the smaller one on the same path can become with no more, and that derivation dominates.
-// Sizes of a kind therefore fall strictly along a path, which ends it.
-func (s *deriver) derive(n node, path []node) []derivation {
-	for _, p := range path {
-		if p.kind == n.kind && p.size <= n.size {
+func derive(w *network, s *Sheet) *deriver {
+	d := &deriver{network: w, sheet: s, front: make([][]*derivation, len(w.nodes)), capped: w.capped}
+	dirty := make([]bool, len(w.nodes))
+	for i := range dirty {
+		dirty[i] = true
+	}
+	for again, pass := true, 0; again; pass++ {
+		if pass == passLimit {
+			d.capped = true
+			break
+		}
+		again = false
+		for _, i := range w.order {
+			if !dirty[i] {
+				continue
+			}
+			dirty[i] = false
+			now := d.prune(d.ways(i))
+			keepOld(now, d.front[i])
+			if slices.Equal(now, d.front[i]) {
+				continue
+			}
+			d.front[i] = now
+			for _, p := range w.parents[i] {
+				dirty[p], again = true, true
+			}
+		}
+	}
+	return d
+}
+
+// keepOld puts old derivations in the place of new ones that take the same step and go on by the very same derivations:
+// what does not change keeps its identity, and nodes above it need no second look.
+func keepOld(now, old []*derivation) {
+	for k, a := range now {
+		for _, b := range old {
+			if a.crossed == b.crossed && slices.Equal(a.parts, b.parts) {
+				now[k] = b
+			}
+		}
+	}
+}
+
+// native reports whether the sheet takes a node as it is.
+func (d *deriver) native(i int) bool {
+	limit, ok := d.sheet.Takes[d.nodes[i].kind]
+	return ok && (limit == 0 || d.nodes[i].size <= limit)
+}
+
+// ways lists what can be done at a node, given the present sets of its parts.
+func (d *deriver) ways(i int) []*derivation {
+	var all []*derivation
+	native := d.native(i)
+	if native {
+		all = append(all, &derivation{at: i, load: []part{{i, 1}}, merits: exactMerit | d.needed(i), kinds: 1 << (d.kinds[i] & 63), passes: 1 << (i & 63)})
+	}
+	for k := range d.edges[i] {
+		if e := &d.edges[i][k]; !native || !d.last[e.rule] {
+			all = append(all, d.over(i, e)...)
+		}
+	}
+	return all
+}
+
+// needed gives the merit of having an item of a kind that the sheet needs.
+func (d *deriver) needed(i int) merits {
+	// Sheets need one kind or two; what does not fit into the word goes unmarked, and is then found only by luck.
+	if k := slices.Index(d.sheet.Needs, d.nodes[i].kind); k >= 0 && k < 62 {
+		return 2 << k
+	}
+	return 0
+}
+
+// over lists the ways that start with one crossing. Those that come back to the node itself are dominated by what they go
+// on with there, and left out.
+func (d *deriver) over(i int, e *edge) []*derivation {
+	for _, p := range e.parts {
+		if len(d.front[p.at]) == 0 {
 			return nil
 		}
 	}
-	var all []derivation
-	demand := Demand{Kind: n.kind, Size: n.size, Count: 1}
-	limit, native := s.sheet.Takes[n.kind]
-	if native = native && (limit == 0 || n.size <= limit); native {
-		all = append(all, derivation{leg: Leg{Demand: demand}, load: map[node]int{n: 1}})
+	first := &derivation{at: i, crossed: e, crossings: 1, passes: 1 << (i & 63)}
+	if d.rules[e.rule].Exactness() == Exact {
+		first.merits = exactMerit
 	}
-	path = append(path[:len(path):len(path)], n)
-	for _, r := range s.byFrom[n.kind] {
-		parts, ok := r.Yields(n.size)
-		if !ok || native && r.LastResort() {
-			continue
+	ways := []*derivation{first}
+	for k, p := range e.parts {
+		longer := make([]*derivation, 0, len(ways)*len(d.front[p.at]))
+		for _, m := range d.front[p.at] {
+			if d.sheet.Needs == nil && m.visits(i) {
+				continue
+			}
+			for _, w := range ways {
+				if w.crossings+m.crossings > crossingLimit {
+					d.capped = true
+					continue
+				}
+				longer = append(longer, w.with(m, p.count))
+			}
 		}
-		ways := []derivation{{leg: Leg{Demand: demand, Bridge: r.ID()}, load: map[node]int{}, crossings: 1, name: r.ID(), exactness: r.Exactness()}}
-		for _, p := range parts {
-			ways = s.prune(combine(ways, s.derive(node{p.Kind, p.Size}, path), p))
+		ways = longer
+		if k > 0 {
+			ways = d.prune(ways)
 		}
-		all = append(all, ways...)
 	}
-	return s.prune(all)
+	return ways
 }
 
-// combine adds every way of a part to every way found so far.
-func combine(ways, more []derivation, p Demand) []derivation {
-	var out []derivation
-	for _, w := range ways {
-		for _, m := range more {
-			d := derivation{leg: w.leg, load: maps.Clone(w.load), crossings: w.crossings + m.crossings, name: w.name + " " + m.name, exactness: worst(w.exactness, m.exactness)}
-			leg := m.leg
-			leg.Demand.Count = p.Count
-			d.leg.Parts = append(slices.Clone(w.leg.Parts), leg)
-			for n, k := range m.load {
-				d.load[n] += k * p.Count
-			}
-			out = append(out, d)
+// visits reports whether a way passes a node.
+func (w *derivation) visits(i int) bool {
+	if w.passes&(1<<(i&63)) == 0 {
+		return false
+	}
+	return w.at == i || slices.ContainsFunc(w.parts, func(p *derivation) bool { return p.visits(i) })
+}
+
+// with adds count items that go the way of m.
+func (w *derivation) with(m *derivation, count int) *derivation {
+	return &derivation{
+		at: w.at, crossed: w.crossed,
+		parts:     append(w.parts[:len(w.parts):len(w.parts)], m),
+		load:      addLoads(w.load, m.load, count),
+		crossings: w.crossings + m.crossings,
+		merits:    w.merits&m.merits&exactMerit | (w.merits|m.merits)&^exactMerit,
+		kinds:     w.kinds | m.kinds,
+		passes:    w.passes | m.passes,
+	}
+}
+
+// addLoads returns a + count*b.
+func addLoads(a, b []part, count int) []part {
+	if len(a) == 0 && count == 1 {
+		return b
+	}
+	out := make([]part, 0, len(a)+len(b))
+	for len(a) > 0 || len(b) > 0 {
+		switch {
+		case len(b) == 0 || len(a) > 0 && a[0].at < b[0].at:
+			out = append(out, a[0])
+			a = a[1:]
+		case len(a) == 0 || b[0].at < a[0].at:
+			out = append(out, part{b[0].at, times(b[0].count, count)})
+			b = b[1:]
+		default:
+			out = append(out, part{a[0].at, add(a[0].count, times(b[0].count, count))})
+			a, b = a[1:], b[1:]
 		}
 	}
 	return out
 }
 
-// worst joins the exactness of two bridges. Inner and outer together promise nothing; the planner is only asked for one
-// of them at a time.
-func worst(a, b Exactness) Exactness { return max(a, b) }
+// compareWays puts the way first that wins a tie: exact before not, then fewer bridges (none at all: native), then the
+// smaller names from the top down.
+func compareWays(a, b *derivation) int {
+	return cmp.Or(cmp.Compare(b.merits&exactMerit, a.merits&exactMerit), cmp.Compare(a.crossings, b.crossings), compareShapes(a, b))
+}
 
-// prune drops dominated derivations; of equal ones the one with fewer crossings, then the smaller name stays.
-func (s *deriver) prune(all []derivation) []derivation {
-	slices.SortStableFunc(all, func(a, b derivation) int {
-		return cmp.Or(cmp.Compare(a.crossings, b.crossings), cmp.Compare(a.name, b.name))
-	})
-	var keep []derivation
-	for _, d := range all {
-		if slices.ContainsFunc(keep, func(k derivation) bool { return dominates(k.load, d.load) }) {
+// compareShapes orders ways by the bridges that they cross. Ways of different nodes may be equal.
+func compareShapes(a, b *derivation) int {
+	if a == b {
+		return 0
+	}
+	if a.crossed == nil || b.crossed == nil {
+		return cmp.Compare(len(a.parts), len(b.parts))
+	}
+	if c := cmp.Compare(a.crossed.rule, b.crossed.rule); c != 0 {
+		return c
+	}
+	return slices.CompareFunc(a.parts, b.parts, compareShapes)
+}
+
+// prune drops dominated derivations, of equal ones those that come later in a tie, and sorts the rest.
+func (d *deriver) prune(all []*derivation) []*derivation {
+	if len(all) <= 1 {
+		return all
+	}
+	slices.SortStableFunc(all, compareWays)
+	var keep []*derivation
+	for _, w := range all {
+		if slices.ContainsFunc(keep, func(x *derivation) bool { return d.dominates(x, w) }) {
 			continue
 		}
-		keep = slices.DeleteFunc(keep, func(k derivation) bool { return dominates(d.load, k.load) })
-		keep = append(keep, d)
+		keep = slices.DeleteFunc(keep, func(x *derivation) bool { return d.dominates(w, x) })
+		keep = append(keep, w)
 	}
 	if len(keep) > frontierLimit {
-		keep, s.capped = keep[:frontierLimit], true
+		keep, d.capped = keep[:frontierLimit], true
 	}
 	return keep
 }
 
-// dominates reports whether the items of a map one-to-one into items of b of the same kind and at least their size: then
-// no toll that rises with sizes and counts finds a dearer than b. By Hall's theorem for nested sets it is enough that,
-// for every size, b has at least as many items from that size on as a.
-func dominates(a, b map[node]int) bool {
-	for n := range a {
-		need, have := 0, 0
-		for m, c := range a {
-			if m.kind == n.kind && m.size >= n.size {
-				need += c
+// dominates reports whether a is at least as good as b under every toll that rises with sizes and counts: the items of a
+// map one-to-one into items of b of the same kind and at least their size, and a has every merit of b.
+//
+// By Hall's theorem (1935, from memory) for nested sets such a map exists if for every kind and size, b has at least as
+// many items from that size on. Loads are sorted by kind and falling size, so the numbers add up from the left.
+func (d *deriver) dominates(a, b *derivation) bool {
+	if b.merits&^a.merits != 0 || a.kinds&^b.kinds != 0 {
+		return false
+	}
+	rest := b.load
+	kind, need, have := -1, 0, 0
+	for _, p := range a.load {
+		if k := d.kinds[p.at]; k != kind {
+			kind, need, have = k, 0, 0
+			for len(rest) > 0 && d.kinds[rest[0].at] < kind {
+				rest = rest[1:]
 			}
 		}
-		for m, c := range b {
-			if m.kind == n.kind && m.size >= n.size {
-				have += c
-			}
+		need += p.count
+		for len(rest) > 0 && rest[0].at <= p.at && d.kinds[rest[0].at] == kind {
+			have += rest[0].count
+			rest = rest[1:]
 		}
 		if have < need {
 			return false
 		}
 	}
 	return true
+}
+
+// leg writes a derivation down for a demand.
+func (d *deriver) leg(w *derivation, of Demand) Leg {
+	l := Leg{Demand: of}
+	if w.crossed == nil {
+		return l
+	}
+	l.Bridge = d.rules[w.crossed.rule].ID()
+	for k, p := range w.crossed.parts {
+		n := d.nodes[p.at]
+		l.Parts = append(l.Parts, d.leg(w.parts[k], Demand{Kind: n.kind, Size: n.size, Count: p.count}))
+	}
+	return l
+}
+
+// exactness joins that of all bridges of a way. A plan never allows inner and outer ones in the same route.
+func (d *deriver) exactness(w *derivation) Exactness {
+	if w.crossed == nil || w.merits&exactMerit != 0 {
+		return Exact
+	}
+	worst := d.rules[w.crossed.rule].Exactness()
+	for _, p := range w.parts {
+		worst = max(worst, d.exactness(p))
+	}
+	return worst
 }

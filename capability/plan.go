@@ -8,17 +8,23 @@ import (
 
 // Options of a plan. The zero value allows exact bridges only and needs nothing but values.
 type Options struct {
-	Allow    []Exactness // kinds of exactness allowed beside Exact
+	Allow    []Exactness // kinds of exactness allowed beside Exact; a route never has both inner and outer bridges
 	Need     Lifts       // what every bridge and the sheet must bring back
 	MaxBytes float64     // memory allowed to the solve; 0 for no limit
 	Disabled []string    // bridges not to use
+	// MaxVisits bounds the exploration of what the demands can become, in nodes visited; 0 for DefaultVisits. Routes of
+	// a plan that met it are not called proven.
+	MaxVisits int
 }
+
+// DefaultVisits is far above what any model needs with the catalogue (some ten per demand), and takes well under a second.
+const DefaultVisits = 200_000
 
 // Proposal is what planning found for one sheet: a route, or why there is none.
 type Proposal struct {
 	Sheet       *Sheet
 	Route       *Route
-	RunnersUp   []*Route // best route with another decision for one demand, cheapest first
+	RunnersUp   []*Route // best routes with another decision for one demand, cheapest first; Why says why they lost
 	Unreachable *Unreachable
 }
 
@@ -29,87 +35,134 @@ type Unreachable struct {
 }
 
 // Plan finds the cheapest route to every sheet, sheets sorted by name. The result depends on the sets of demands, rules
-// and sheets, not on their order.
+// and sheets, not on their order. Demands of the same kind and size count as one; those with sizes or counts below one
+// ask for nothing.
 func Plan(demands []Demand, rules []Rule, sheets []*Sheet, o Options) []Proposal {
-	byFrom := map[Kind][]Rule{}
-	for _, r := range rules {
-		allowed := r.Exactness() == Exact || slices.Contains(o.Allow, r.Exactness())
-		if allowed && r.Lifts()&o.Need == o.Need && !slices.Contains(o.Disabled, r.ID()) {
-			byFrom[r.From()] = append(byFrom[r.From()], r)
+	demands = merge(demands)
+	sheets = slices.Clone(sheets)
+	slices.SortStableFunc(sheets, func(a, b *Sheet) int {
+		return cmp.Or(cmp.Compare(a.Name, b.Name), cmp.Compare(a.Backend, b.Backend), cmp.Compare(a.Version, b.Version))
+	})
+	rules = slices.Clone(rules)
+	slices.SortStableFunc(rules, func(a, b Rule) int { return cmp.Compare(a.ID(), b.ID()) })
+	roots := make([]node, len(demands))
+	for k, d := range demands {
+		roots[k] = node{d.Kind, d.Size}
+	}
+	visits := o.MaxVisits
+	if visits <= 0 {
+		visits = DefaultVisits
+	}
+	var networks []*network
+	for _, allowed := range o.passes() {
+		usable, out := o.sift(rules, allowed)
+		networks = append(networks, explore(roots, usable, out, visits))
+	}
+	proposals := make([]Proposal, len(sheets))
+	for k, s := range sheets {
+		for i, w := range networks {
+			if p := propose(demands, w, s, o); i == 0 || p.before(&proposals[k]) {
+				proposals[k] = p
+			}
 		}
 	}
-	for _, list := range byFrom {
-		slices.SortFunc(list, func(a, b Rule) int { return cmp.Compare(a.ID(), b.ID()) })
-	}
+	return proposals
+}
+
+// merge sorts demands and joins equal ones.
+func merge(demands []Demand) []Demand {
 	demands = slices.Clone(demands)
-	slices.SortFunc(demands, compareDemands)
-	sheets = slices.Clone(sheets)
-	slices.SortFunc(sheets, func(a, b *Sheet) int { return cmp.Compare(a.Name, b.Name) })
-	var out []Proposal
-	for _, s := range sheets {
-		out = append(out, propose(demands, byFrom, s, o))
+	slices.SortStableFunc(demands, compareDemands)
+	out := demands[:0]
+	for _, d := range demands {
+		if d.Size < 1 || d.Count < 1 {
+			continue
+		}
+		d.Count = min(d.Count, most)
+		if last := len(out) - 1; last >= 0 && out[last].Kind == d.Kind && out[last].Size == d.Size {
+			out[last].Count = add(out[last].Count, d.Count)
+			out[last].Nonzeros += d.Nonzeros
+			continue
+		}
+		out = append(out, d)
 	}
 	return out
 }
 
+// passes lists the sides on which bridges may err. When both are allowed, each is planned for by itself: what may lose
+// points and may add points bounds nothing.
+func (o *Options) passes() []Exactness {
+	var out []Exactness
+	for _, e := range []Exactness{Inner, Outer} {
+		if slices.Contains(o.Allow, e) {
+			out = append(out, e)
+		}
+	}
+	if out == nil {
+		out = []Exactness{Exact}
+	}
+	return out
+}
+
+// sift parts sorted rules into those that a plan may use and those that it may not, with the reason.
+func (o *Options) sift(rules []Rule, allowed Exactness) (usable []Rule, out []barred) {
+	for _, r := range rules {
+		missing := o.Need &^ r.Lifts()
+		switch {
+		case slices.Contains(o.Disabled, r.ID()):
+			out = append(out, barred{r, "is switched off"})
+		case missing != 0:
+			out = append(out, barred{r, fmt.Sprintf("does not bring back %s, which the job needs", missing)})
+		case r.Exactness() == Exact || r.Exactness() == allowed:
+			usable = append(usable, r)
+		case slices.Contains(o.Allow, r.Exactness()):
+			out = append(out, barred{r, fmt.Sprintf("is %s, and does not mix with %s ones", r.Exactness(), allowed)})
+		default:
+			out = append(out, barred{r, fmt.Sprintf("is %s, which the job does not allow", r.Exactness())})
+		}
+	}
+	return usable, out
+}
+
+// before reports whether a proposal for the same sheet, made on the other side of exactness, is better.
+func (p *Proposal) before(q *Proposal) bool {
+	if p.Route == nil || q.Route == nil {
+		return p.Route != nil
+	}
+	return cmp.Or(cmp.Compare(coarse(p.Route.Toll.Seconds), coarse(q.Route.Toll.Seconds)), cmp.Compare(p.Route.Exactness, q.Route.Exactness)) < 0
+}
+
 // propose plans for one sheet.
-func propose(demands []Demand, byFrom map[Kind][]Rule, s *Sheet, o Options) Proposal {
-	refuse := func(d []Demand, reasons ...string) Proposal {
-		return Proposal{Sheet: s, Unreachable: &Unreachable{Demands: d, Reasons: reasons}}
+func propose(demands []Demand, w *network, s *Sheet, o Options) Proposal {
+	refuse := func(lost []Demand, reasons ...string) Proposal {
+		return Proposal{Sheet: s, Unreachable: &Unreachable{Demands: lost, Reasons: reasons}}
 	}
 	if missing := o.Need &^ s.Returns; missing != 0 {
 		return refuse(nil, fmt.Sprintf("%s does not return %s, which the job needs", s.Name, missing))
 	}
-	way := &deriver{sheet: s, byFrom: byFrom}
-	c := &choice{demands: demands, sheet: s, pick: make([]int, len(demands))}
+	if s.Toll == nil {
+		return refuse(nil, fmt.Sprintf("%s declares no toll, so nothing can be predicted for it", s.Name))
+	}
+	c := &choice{deriver: derive(w, s), maxBytes: o.MaxBytes}
 	var lost []Demand
-	var reasons []string
 	for _, d := range demands {
-		found := way.derive(node{d.Kind, d.Size}, nil)
-		if len(found) == 0 {
+		at := w.number[node{d.Kind, d.Size}]
+		c.groups = append(c.groups, group{demand: d, at: at, ways: c.front[at]})
+		if len(c.front[at]) == 0 {
 			lost = append(lost, d)
-			reasons = append(reasons, way.explain(d))
 		}
-		c.groups = append(c.groups, found)
 	}
 	if len(lost) > 0 {
-		return refuse(lost, reasons...)
+		return refuse(lost, c.explain(lost)...)
 	}
-	proven := c.search() && !way.capped
-	route := c.route(proven)
-	for _, k := range s.Needs {
-		if !slices.ContainsFunc(route.Load, func(d Demand) bool { return d.Kind == k }) {
-			return refuse(nil, fmt.Sprintf("%s needs at least one %s and the cheapest route has none; use another sheet", s.Name, k))
-		}
+	c.prepare()
+	doubt := c.search()
+	if c.capped {
+		doubt = "there were too many ways to keep all"
 	}
-	if o.MaxBytes > 0 && route.Toll.Bytes > o.MaxBytes {
-		return refuse(nil, fmt.Sprintf("%s would need %s, and %s are allowed; raise the limit, or use a sheet that takes more kinds natively", s.Name, bytesText(route.Toll.Bytes), bytesText(o.MaxBytes)))
+	route := c.route(doubt)
+	if why := c.illegal(route); why != "" {
+		return refuse(nil, why)
 	}
-	return Proposal{Sheet: s, Route: route, RunnersUp: c.runnersUp(proven)}
-}
-
-// explain says what was tried for a demand that has no derivation.
-func (s *deriver) explain(d Demand) string {
-	text := fmt.Sprintf("%s of size %d: %s does not take it", d.Kind, d.Size, s.sheet.Name)
-	if limit, ok := s.sheet.Takes[d.Kind]; ok {
-		text = fmt.Sprintf("%s of size %d: %s takes it up to size %d", d.Kind, d.Size, s.sheet.Name, limit)
-	}
-	tried := 0
-	for _, r := range s.byFrom[d.Kind] {
-		parts, ok := r.Yields(d.Size)
-		if !ok {
-			continue
-		}
-		for _, p := range parts {
-			if len(s.derive(node{p.Kind, p.Size}, []node{{d.Kind, d.Size}})) == 0 {
-				text += fmt.Sprintf("; bridge %s leads to %s of size %d, which goes no further", r.ID(), p.Kind, p.Size)
-				tried++
-				break
-			}
-		}
-	}
-	if tried == 0 {
-		text += ", and no bridge leaves it"
-	}
-	return text
+	return Proposal{Sheet: s, Route: route, RunnersUp: c.runnersUp(route)}
 }
