@@ -2,6 +2,7 @@ package broker
 
 import (
 	"encoding/binary"
+	"fmt"
 	"math"
 	"net"
 	"os"
@@ -11,10 +12,14 @@ import (
 	"testing"
 
 	"towpath/broker/wire"
+	"towpath/model"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/grpc"
+	"google.golang.org/grpc/codes"
 	"google.golang.org/grpc/credentials/insecure"
+	"google.golang.org/grpc/status"
+	"google.golang.org/protobuf/proto"
 )
 
 // Ten million complex coefficients, 200 MB with their columns, through TCP under gRPC's default limit of 4 MiB for one
@@ -51,10 +56,10 @@ func TestTenMillionComplexCoefficients(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	const model = rows * each * (16 + 4)
+	const size = rows * each * (16 + 4)
 	grown := peak(t) - before
-	t.Logf("%d coefficients, %.0f MB of arrays, peak memory grew by %.0f MB", rows*each, model/1e6, float64(grown)/1e6)
-	if clear && grown > 4*model {
+	t.Logf("%d coefficients, %.0f MB of arrays, peak memory grew by %.0f MB", rows*each, size/1e6, float64(grown)/1e6)
+	if clear && grown > 4*size {
 		t.Errorf("peak memory grew by %d bytes, more than four times the model", grown)
 	}
 	if len(r.GetModelId()) != 64 {
@@ -76,6 +81,86 @@ func TestTenMillionComplexCoefficients(t *testing.T) {
 	if err := <-served; err != nil {
 		t.Errorf("serving ended with %v", err)
 	}
+}
+
+// Models and answers of very many small parts pass, too: neither is ever one message.
+func TestVeryManySmallConstraints(t *testing.T) {
+	if testing.Short() {
+		t.Skip("80 000 constraints")
+	}
+	const n = 80_000
+	m := smallest()
+	first := m.GetConstraints()[0]
+	y := &model.Multipliers{Constraints: [][]complex128{{1}}, Bounds: [][]complex128{nil}}
+	for k := range n - 1 {
+		c := proto.CloneOf(first)
+		c.Name = fmt.Sprintf("at least one, said again for the %dth time", k)
+		m.Constraints = append(m.Constraints, c)
+		y.Constraints = append(y.Constraints, []complex128{0})
+	}
+	answer := right()
+	answer.Multipliers = y
+	s := newStation(t, Config{}, &puppet{"tug", 1, answering(answer)})
+	_, err := s.try(m, nil)
+	if status.Code(err) != codes.ResourceExhausted {
+		t.Errorf("as one message: %v", err)
+	}
+	a := s.answerUploaded(proto.CloneOf(m))
+	if got := a.GetMultipliers().GetConstraints(); len(got) != n || got[0].GetValues().GetRe()[0] != 1 || got[n-1].GetName() != m.GetConstraints()[n-1].GetName() {
+		t.Errorf("%d multipliers", len(got))
+	}
+	if v := a.GetExamination(); v.GetVerdict() != towpathv1.Verdict_VERDICT_CHECKED || len(v.GetConstraints()) != n {
+		t.Errorf("verdict %v on %d constraints", v.GetVerdict(), len(v.GetConstraints()))
+	}
+}
+
+// An answer over gRPC's limit for one message comes in chunks.
+func TestLargeAnswers(t *testing.T) {
+	const n = 1_000_000 // 8 MB
+	m := smallest()
+	m.Constraints = nil
+	m.Blocks[0].Rows = n
+	point := make([]complex128, n)
+	for k := range point {
+		point[k] = complex(float64(k), 0)
+	}
+	point[0] = 0
+	s := newStation(t, Config{}, &puppet{"tug", 1, answering(&model.Answer{Outcome: model.Optimal, Point: &model.Point{Values: [][]complex128{point}},
+		Multipliers: &model.Multipliers{Constraints: [][]complex128{}, Bounds: [][]complex128{nil}}})})
+	a := s.answer(m, nil)
+	data := a.GetValues()[0].GetEntries().GetF64().GetData()
+	if len(data) != 8*n || math.Float64frombits(binary.LittleEndian.Uint64(data[8*(n-1):])) != n-1 {
+		t.Errorf("%d bytes came back", len(data))
+	}
+	if v := a.GetExamination().GetVerdict(); v != towpathv1.Verdict_VERDICT_CHECKED {
+		t.Errorf("verdict %v: %v", v, a.GetExamination().GetReasons())
+	}
+}
+
+// answerUploaded uploads a model, which is changed, solves it and returns its answer.
+func (s *station) answerUploaded(m *towpathv1.Model) *towpathv1.Answer {
+	s.t.Helper()
+	stream, err := s.jobs.UploadModel(s.ctx())
+	if err != nil {
+		s.t.Fatal(err)
+	}
+	if err := wire.SendModel(m, stream.Send); err != nil {
+		s.t.Fatal(err)
+	}
+	r, err := stream.CloseAndRecv()
+	if err != nil {
+		s.t.Fatal(err)
+	}
+	job, err := s.jobs.SubmitJob(s.ctx(), &towpathv1.SubmitJobRequest{Source: &towpathv1.SubmitJobRequest_ModelId{ModelId: r.GetModelId()}})
+	if err != nil {
+		s.t.Fatal(err)
+	}
+	s.wait(job.GetJob().GetId(), towpathv1.JobState_JOB_STATE_ANSWERED)
+	a, err := s.fetch(job.GetJob().GetId())
+	if err != nil {
+		s.t.Fatal(err)
+	}
+	return a
 }
 
 // manyRows is a model with complex equality rows of so many coefficients each.
