@@ -61,7 +61,8 @@ func TestJobFromWaitingToAnswered(t *testing.T) {
 		t.Fatalf("%d lines say which route was chosen", len(lines))
 	}
 	line := lines[0].ContextMap()
-	if line["job"] != id || line["sheet"] != "tug/real" || line["toll_seconds"] != 1.0 || len(fmt.Sprint(line["model"])) != 64 || !strings.Contains(fmt.Sprint(line["losers"]), "slow/real") {
+	if line["job"] != id || line["sheet"] != "tug/real" || line["toll_seconds"] != 1.0 || len(fmt.Sprint(line["model"])) != 64 || !strings.Contains(fmt.Sprint(line["losers"]), "slow/real") ||
+		!strings.Contains(fmt.Sprint(line["route"]), "map/real/nonneg") {
 		t.Errorf("the line says %v", line)
 	}
 	if n := s.log.FilterMessage("job changed").Len(); n != len(wholeLife) {

@@ -77,7 +77,7 @@ func (b *Broker) process(id string) {
 	b.solve(ctx, id, l, m, proposals, planned)
 }
 
-// logRoute writes the one line that says which way a job goes.
+// logRoute writes the one line that says which way a job goes, and what it would have cost elsewhere.
 func (b *Broker) logRoute(id, modelID string, proposals []capability.Proposal) {
 	chosen := proposals[0].Route
 	type loser struct {
@@ -88,16 +88,21 @@ func (b *Broker) logRoute(id, modelID string, proposals []capability.Proposal) {
 	var losers []loser
 	for i := range proposals[1:] {
 		p := &proposals[1+i]
-		if p.Route != nil {
+		switch {
+		case p.Route != nil:
 			losers = append(losers, loser{Sheet: p.Sheet.Name, Seconds: p.Route.Toll.Seconds})
-		} else if len(p.Unreachable.Reasons) > 0 {
-			losers = append(losers, loser{Sheet: p.Sheet.Name, Why: p.Unreachable.Reasons[0]})
+		case len(p.Unreachable.Reasons) > 0:
+			losers = append(losers, loser{Sheet: p.Sheet.Name, Why: clip(p.Unreachable.Reasons[0])})
 		}
+	}
+	var runnersUp []float64
+	for _, r := range proposals[0].RunnersUp {
+		runnersUp = append(runnersUp, r.Toll.Seconds)
 	}
 	b.log.Info("route chosen", zap.String("job", id), zap.String("model", modelID), zap.String("sheet", chosen.Sheet.Name),
 		zap.String("version", chosen.Sheet.Version), zap.Bool("native", chosen.Native()), zap.Bool("proven", chosen.Proven),
 		zap.Float64("toll_seconds", chosen.Toll.Seconds), zap.Float64("toll_bytes", chosen.Toll.Bytes),
-		zap.Any("legs", wire.RouteToProto(chosen).GetLegs()), zap.Any("losers", losers))
+		zap.String("route", chosen.String()), zap.Float64s("runners_up_toll_seconds", runnersUp), zap.Any("losers", losers))
 }
 
 // attempts is how many routes are tried when one fails or its answer does not pass: the best and the next best.

@@ -10,11 +10,15 @@ func RouteToProto(r *capability.Route) *towpathv1.Route {
 	if r == nil {
 		return nil
 	}
-	return &towpathv1.Route{
-		Sheet: r.Sheet.Name, Backend: r.Sheet.Backend, Native: r.Native(), Proven: r.Proven,
+	out := &towpathv1.Route{
+		Sheet: r.Sheet.Name, Backend: r.Sheet.Backend, Native: r.Native(), Proven: r.Proven, Doubt: r.Doubt,
 		Toll:      &towpathv1.Toll{Seconds: r.Toll.Seconds, Bytes: r.Toll.Bytes},
 		Exactness: exactnessToProto(r.Exactness), Legs: legsToProto(r.Legs), Load: DemandsToProto(r.Load),
 	}
+	for k, share := range r.Shares() {
+		out.Legs[k].ShareSeconds = share.Seconds
+	}
+	return out
 }
 
 func exactnessToProto(e capability.Exactness) towpathv1.Exactness { return towpathv1.Exactness(e) + 1 }

@@ -214,7 +214,9 @@ type Leg struct {
 	// The bridge crossed; empty when the back end takes the demand natively.
 	Bridge string `protobuf:"bytes,2,opt,name=bridge,proto3" json:"bridge,omitempty"`
 	// What one demand becomes.
-	Parts         []*Leg `protobuf:"bytes,3,rep,name=parts,proto3" json:"parts,omitempty"`
+	Parts []*Leg `protobuf:"bytes,3,rep,name=parts,proto3" json:"parts,omitempty"`
+	// How many seconds less the toll would be without this demand; 0 for parts.
+	ShareSeconds  float64 `protobuf:"fixed64,4,opt,name=share_seconds,json=shareSeconds,proto3" json:"share_seconds,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -270,6 +272,13 @@ func (x *Leg) GetParts() []*Leg {
 	return nil
 }
 
+func (x *Leg) GetShareSeconds() float64 {
+	if x != nil {
+		return x.ShareSeconds
+	}
+	return 0
+}
+
 // Route is one way from a model to one sheet of a back end.
 type Route struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -288,7 +297,9 @@ type Route struct {
 	// What the back end is asked to take in the end.
 	Load []*Demand `protobuf:"bytes,7,rep,name=load,proto3" json:"load,omitempty"`
 	// Whether the route is proved cheapest under the toll model.
-	Proven        bool `protobuf:"varint,8,opt,name=proven,proto3" json:"proven,omitempty"`
+	Proven bool `protobuf:"varint,8,opt,name=proven,proto3" json:"proven,omitempty"`
+	// Why it is not proved, in one sentence.
+	Doubt         string `protobuf:"bytes,9,opt,name=doubt,proto3" json:"doubt,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -377,6 +388,13 @@ func (x *Route) GetProven() bool {
 		return x.Proven
 	}
 	return false
+}
+
+func (x *Route) GetDoubt() string {
+	if x != nil {
+		return x.Doubt
+	}
+	return ""
 }
 
 // Unreachable says why a sheet cannot serve a model.
@@ -1242,11 +1260,12 @@ const file_towpath_v1_route_proto_rawDesc = "" +
 	"\bnonzeros\x18\x04 \x01(\x04R\bnonzeros\"6\n" +
 	"\x04Toll\x12\x18\n" +
 	"\aseconds\x18\x01 \x01(\x01R\aseconds\x12\x14\n" +
-	"\x05bytes\x18\x02 \x01(\x01R\x05bytes\"p\n" +
+	"\x05bytes\x18\x02 \x01(\x01R\x05bytes\"\x95\x01\n" +
 	"\x03Leg\x12*\n" +
 	"\x06demand\x18\x01 \x01(\v2\x12.towpath.v1.DemandR\x06demand\x12\x16\n" +
 	"\x06bridge\x18\x02 \x01(\tR\x06bridge\x12%\n" +
-	"\x05parts\x18\x03 \x03(\v2\x0f.towpath.v1.LegR\x05parts\"\x8f\x02\n" +
+	"\x05parts\x18\x03 \x03(\v2\x0f.towpath.v1.LegR\x05parts\x12#\n" +
+	"\rshare_seconds\x18\x04 \x01(\x01R\fshareSeconds\"\xa5\x02\n" +
 	"\x05Route\x12\x14\n" +
 	"\x05sheet\x18\x01 \x01(\tR\x05sheet\x12\x18\n" +
 	"\abackend\x18\x02 \x01(\tR\abackend\x12\x16\n" +
@@ -1255,7 +1274,8 @@ const file_towpath_v1_route_proto_rawDesc = "" +
 	"\texactness\x18\x05 \x01(\x0e2\x15.towpath.v1.ExactnessR\texactness\x12#\n" +
 	"\x04legs\x18\x06 \x03(\v2\x0f.towpath.v1.LegR\x04legs\x12&\n" +
 	"\x04load\x18\a \x03(\v2\x12.towpath.v1.DemandR\x04load\x12\x16\n" +
-	"\x06proven\x18\b \x01(\bR\x06proven\"U\n" +
+	"\x06proven\x18\b \x01(\bR\x06proven\x12\x14\n" +
+	"\x05doubt\x18\t \x01(\tR\x05doubt\"U\n" +
 	"\vUnreachable\x12,\n" +
 	"\ademands\x18\x01 \x03(\v2\x12.towpath.v1.DemandR\ademands\x12\x18\n" +
 	"\areasons\x18\x02 \x03(\tR\areasons\"\xa2\x02\n" +
