@@ -105,6 +105,25 @@ func TestOldJobsAreForgotten(t *testing.T) {
 	}
 }
 
+// A job that is refused at the last moment, after its model was stored, leaves nothing behind.
+func TestRefusedAtTheLastMoment(t *testing.T) {
+	s := newStation(t, Config{}, &puppet{"tug", 1, honestly})
+	in, err := admit(smallest())
+	if err != nil {
+		t.Fatal(err)
+	}
+	s.b.mu.Lock() // what submit does first is over; from here on there is no room
+	s.b.drains = true
+	s.b.mu.Unlock()
+	_, err = s.b.enter(t.Context(), in, &towpathv1.SubmitJobRequest{}, "id")
+	refused(t, statusOf(err), codes.Unavailable, Draining, "the server is stopping; try again")
+	s.b.mu.Lock()
+	defer s.b.mu.Unlock()
+	if len(s.b.models) != 0 || len(s.b.live) != 0 {
+		t.Errorf("%d models and %d jobs are left", len(s.b.models), len(s.b.live))
+	}
+}
+
 // When the store is full the oldest answers make room; what is in use does not.
 func TestFullStoreMakesRoom(t *testing.T) {
 	h := newHanging()

@@ -29,7 +29,7 @@ import (
 )
 
 // patience is how long a test waits for what must happen.
-const patience = 20 * time.Second
+const patience = time.Minute
 
 // puppet is a back end that does what a test says.
 type puppet struct {

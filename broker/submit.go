@@ -50,6 +50,11 @@ func (b *Broker) submit(ctx context.Context, q *towpathv1.SubmitJobRequest) (job
 	if proposals[0].Route == nil {
 		return nil, noRoute(proposals)
 	}
+	return b.enter(ctx, in, q, id)
+}
+
+// enter stores a model that has a route and makes a waiting job of it.
+func (b *Broker) enter(ctx context.Context, in *intake, q *towpathv1.SubmitJobRequest, id string) (*towpathv1.Job, error) {
 	if err := b.keepModel(ctx, in, func(use *modelUse) { use.jobs++ }); err != nil {
 		return nil, err
 	}
@@ -57,7 +62,7 @@ func (b *Broker) submit(ctx context.Context, q *towpathv1.SubmitJobRequest) (job
 	if d := q.GetOptions().GetLifeLimit(); d != nil {
 		life = min(life, d.AsDuration())
 	}
-	job = &towpathv1.Job{
+	job := &towpathv1.Job{
 		Id: id, State: towpathv1.JobState_JOB_STATE_WAITING, ModelName: in.name, Labels: q.GetLabels(), SubmitTime: timestamppb.Now(),
 		WaitingReason: "no worker was free yet", Options: q.GetOptions(),
 	}
