@@ -133,8 +133,8 @@ func (x *exhaustion) cheapest(demands []Demand, depth int, legal func(load, Toll
 }
 
 // randomToll draws a toll that rises with sizes and counts and is no sum over items: powers of totals, products and
-// maxima of them.
-func randomToll(r *rand.Rand, kinds []Kind) func(Load) Toll {
+// maxima of them. If it shall mount, there are no maxima and no caps in it.
+func randomToll(r *rand.Rand, kinds []Kind, mounts bool) func(Load) Toll {
 	type total struct {
 		weight map[Kind]float64
 		size   float64 // power of sizes
@@ -156,6 +156,9 @@ func randomToll(r *rand.Rand, kinds []Kind) func(Load) Toll {
 	}
 	a, b, c, d, e := draw(), draw(), draw(), draw(), draw()
 	return func(l Load) Toll {
+		if mounts {
+			return Toll{Seconds: 1 + value(a, l) + value(b, l)*value(c, l), Bytes: value(b, l) + value(d, l)}
+		}
 		return Toll{Seconds: value(a, l) + math.Min(1e4, value(b, l)*value(c, l)) + math.Max(value(d, l), value(e, l)), Bytes: value(b, l) + value(d, l)}
 	}
 }
@@ -248,7 +251,7 @@ func TestPlanFindsTheCheapestRoute(t *testing.T) {
 		r := rand.New(rand.NewPCG(seed, 1))
 		kinds := someKinds[:2+r.IntN(4)]
 		rules := randomRules(r, kinds, 2+r.IntN(6))
-		sheet := &Sheet{Name: "s", Takes: map[Kind]int{}, Returns: LiftsAll, Toll: randomToll(r, kinds)}
+		sheet := &Sheet{Name: "s", Takes: map[Kind]int{}, Returns: LiftsAll, Mounts: seed%2 == 0, Toll: randomToll(r, kinds, seed%2 == 0)}
 		for _, k := range kinds {
 			if r.IntN(2) == 0 {
 				sheet.Takes[k] = r.IntN(3) * 2

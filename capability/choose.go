@@ -1,7 +1,6 @@
 package capability
 
 import (
-	"cmp"
 	"math/bits"
 	"slices"
 )
@@ -34,7 +33,8 @@ type group struct {
 	at     int
 	ways   []*derivation
 	floor  *derivation // a load that every way's load dominates, with the merits of all ways
-	probes []key       // of every way, with the others at their floors
+	probes []key       // bounds on all choices that take a way, by way
+	alone  float64     // seconds that the group adds at least to what others take, if tolls mount and floor is nothing
 }
 
 // Bounds on the effort, in items looked at (some ten nanoseconds each).
@@ -48,16 +48,15 @@ func (c *choice) search() (doubt string) {
 	root := c.probe()
 	for k := range c.groups {
 		c.pick[k] = best(c.groups[k].probes)
-		c.put(c.groups[k].floor, k, -1)
-		c.put(c.groups[k].ways[c.pick[k]], k, 1)
 	}
+	c.decide()
 	c.now = c.judge()
 	c.moveKinds()
 	c.moveDemands()
 	if c.now.compare(root) == 0 {
 		return ""
 	}
-	return c.bound()
+	return c.bound(root)
 }
 
 // prepare lays out slots and floors.
@@ -66,19 +65,15 @@ func (c *choice) prepare() {
 	for k := range c.groups {
 		for _, w := range c.groups[k].ways {
 			for _, p := range w.load {
-				if c.slot[p.at] == 0 {
-					c.slot[p.at] = 1
-					c.slots = append(c.slots, p.at)
-				}
+				c.slot[p.at] = 1
 			}
 		}
-		c.groups[k].floor = c.floor(c.groups[k].ways)
 	}
-	slices.SortFunc(c.slots, func(a, b int) int {
-		return cmp.Or(compareKinds(c.nodes[a].kind, c.nodes[b].kind), cmp.Compare(c.nodes[a].size, c.nodes[b].size))
-	})
-	for s, at := range c.slots {
-		c.slot[at] = s
+	for _, at := range c.rising {
+		if c.slot[at] != 0 {
+			c.slot[at] = len(c.slots)
+			c.slots = append(c.slots, at)
+		}
 	}
 	c.counts = make([]int, len(c.slots))
 	c.filled = make([]uint64, (len(c.slots)+63)/64)
@@ -154,6 +149,22 @@ func (c *choice) credit(w *derivation, sign int) {
 	c.key.crossings += sign * w.crossings
 }
 
+// clear takes everything away.
+func (c *choice) clear() {
+	clear(c.counts)
+	clear(c.filled)
+	clear(c.needs)
+	c.key = key{}
+}
+
+// decide puts every group on its way, and nothing else.
+func (c *choice) decide() {
+	c.clear()
+	for k := range c.groups {
+		c.put(c.groups[k].ways[c.pick[k]], k, 1)
+	}
+}
+
 // move changes the way of a group, without judging it.
 func (c *choice) move(k, way int) {
 	c.put(c.groups[k].ways[c.pick[k]], k, -1)
@@ -161,8 +172,8 @@ func (c *choice) move(k, way int) {
 	c.put(c.groups[k].ways[way], k, 1)
 }
 
-// judge evaluates what is put.
-func (c *choice) judge() key {
+// toll evaluates what is put.
+func (c *choice) toll() Toll {
 	c.buffer = c.buffer[:0]
 	for at, word := range c.filled {
 		for ; word != 0; word &= word - 1 {
@@ -172,7 +183,19 @@ func (c *choice) judge() key {
 		}
 	}
 	c.work += len(c.buffer) + 1
-	return c.weigh(c.sheet.Toll(c.buffer))
+	return c.sheet.Toll(c.buffer)
+}
+
+// judge makes a key of what is put.
+func (c *choice) judge() key { return c.weigh(c.toll()) }
+
+// judgeWith does so for a bound: what is still to come takes some seconds more at least.
+func (c *choice) judgeWith(ahead float64) key {
+	t := c.toll()
+	if ahead > 0 {
+		t.Seconds = (t.Seconds + ahead) * (1 - shy)
+	}
+	return c.weigh(t)
 }
 
 // weigh makes a key of a toll and the running totals.
@@ -193,14 +216,17 @@ func (c *choice) weigh(t Toll) key {
 // probe puts every group at its floor, and judges every way of one group with the others there: a bound on every choice
 // that takes the way. It returns the bound on all choices.
 func (c *choice) probe() key {
+	c.clear()
 	for k := range c.groups {
-		c.put(c.groups[k].floor, k, 1)
+		g := &c.groups[k]
+		g.floor, g.probes = c.floor(g.ways), g.probes[:0]
+		c.put(g.floor, k, 1)
 	}
 	root := c.judge()
 	for k := range c.groups {
 		g := &c.groups[k]
 		if len(g.ways) == 1 {
-			g.probes = []key{root}
+			g.probes = append(g.probes, root)
 			continue
 		}
 		c.put(g.floor, k, -1)

@@ -59,6 +59,10 @@ type deriver struct {
 	sheet  *Sheet
 	front  [][]*derivation // by node, the best first
 	capped bool
+
+	items []part           // scratch for a load being added up
+	ways  [2][]*derivation // scratch for the ways of the first parts of a crossing
+	pool  pool
 }
 
 func derive(w *network, s *Sheet) *deriver {
@@ -67,6 +71,7 @@ func derive(w *network, s *Sheet) *deriver {
 	for i := range dirty {
 		dirty[i] = true
 	}
+	var now []*derivation
 	for again, pass := true, 0; again; pass++ {
 		if pass == passLimit {
 			d.capped = true
@@ -78,12 +83,11 @@ func derive(w *network, s *Sheet) *deriver {
 				continue
 			}
 			dirty[i] = false
-			now := d.prune(d.ways(i))
-			keepOld(now, d.front[i])
+			now = d.best(now[:0], i)
 			if slices.Equal(now, d.front[i]) {
 				continue
 			}
-			d.front[i] = now
+			d.front[i] = slices.Clone(now)
 			for _, p := range w.parents[i] {
 				dirty[p], again = true, true
 			}
@@ -92,37 +96,33 @@ func derive(w *network, s *Sheet) *deriver {
 	return d
 }
 
-// keepOld puts old derivations in the place of new ones that take the same step and go on by the very same derivations:
-// what does not change keeps its identity, and nodes above it need no second look.
-func keepOld(now, old []*derivation) {
-	for k, a := range now {
-		for _, b := range old {
-			if a.crossed == b.crossed && slices.Equal(a.parts, b.parts) {
-				now[k] = b
-			}
-		}
-	}
-}
-
 // native reports whether the sheet takes a node as it is.
 func (d *deriver) native(i int) bool {
 	limit, ok := d.sheet.Takes[d.nodes[i].kind]
 	return ok && (limit == 0 || d.nodes[i].size <= limit)
 }
 
-// ways lists what can be done at a node, given the present sets of its parts.
-func (d *deriver) ways(i int) []*derivation {
-	var all []*derivation
+// best appends the ways at a node that no other dominates, given the present sets of its parts, the first in a tie first.
+func (d *deriver) best(keep []*derivation, i int) []*derivation {
 	native := d.native(i)
 	if native {
-		all = append(all, &derivation{at: i, load: []part{{i, 1}}, merits: exactMerit | d.needed(i), kinds: 1 << (d.kinds[i] & 63), passes: 1 << (i & 63)})
+		keep = append(keep, d.asItIs(i))
 	}
 	for k := range d.edges[i] {
 		if e := &d.edges[i][k]; !native || !d.last[e.rule] {
-			all = append(all, d.over(i, e)...)
+			keep = d.over(keep, i, e)
 		}
 	}
-	return all
+	slices.SortFunc(keep, compareWays)
+	return keep
+}
+
+// asItIs is the native way.
+func (d *deriver) asItIs(i int) *derivation {
+	if old := d.front[i]; len(old) > 0 && old[0].crossed == nil {
+		return old[0]
+	}
+	return &derivation{at: i, load: []part{{i, 1}}, merits: exactMerit | d.needed(i), kinds: 1 << (d.kinds[i] & 63), passes: 1 << (i & 63)}
 }
 
 // needed gives the merit of having an item of a kind that the sheet needs.
@@ -134,21 +134,27 @@ func (d *deriver) needed(i int) merits {
 	return 0
 }
 
-// over lists the ways that start with one crossing. Those that come back to the node itself are dominated by what they go
-// on with there, and left out.
-func (d *deriver) over(i int, e *edge) []*derivation {
+// over offers to keep the ways that start with one crossing. Those that come back to the node itself are dominated by what
+// they go on with there, and left out, unless they bring something that the sheet needs.
+func (d *deriver) over(keep []*derivation, i int, e *edge) []*derivation {
 	for _, p := range e.parts {
 		if len(d.front[p.at]) == 0 {
-			return nil
+			return keep
 		}
 	}
-	first := &derivation{at: i, crossed: e, crossings: 1, passes: 1 << (i & 63)}
+	first := derivation{at: i, crossed: e, crossings: 1, passes: 1 << (i & 63)}
 	if d.rules[e.rule].Exactness() == Exact {
 		first.merits = exactMerit
 	}
-	ways := []*derivation{first}
+	if len(e.parts) == 0 {
+		return d.offer(keep, &first)
+	}
+	ways := append(d.ways[0][:0], &first)
 	for k, p := range e.parts {
-		longer := make([]*derivation, 0, len(ways)*len(d.front[p.at]))
+		into := d.ways[1-k%2][:0]
+		if k == len(e.parts)-1 {
+			into = keep
+		}
 		for _, m := range d.front[p.at] {
 			if d.sheet.Needs == nil && m.visits(i) {
 				continue
@@ -158,15 +164,16 @@ func (d *deriver) over(i int, e *edge) []*derivation {
 					d.capped = true
 					continue
 				}
-				longer = append(longer, w.with(m, p.count))
+				into = d.offer(into, d.with(w, m, p.count))
 			}
 		}
-		ways = longer
-		if k > 0 {
-			ways = d.prune(ways)
+		if k == len(e.parts)-1 {
+			return into
 		}
+		d.ways[1-k%2] = into
+		ways = into
 	}
-	return ways
+	return keep
 }
 
 // visits reports whether a way passes a node.
@@ -177,25 +184,24 @@ func (w *derivation) visits(i int) bool {
 	return w.at == i || slices.ContainsFunc(w.parts, func(p *derivation) bool { return p.visits(i) })
 }
 
-// with adds count items that go the way of m.
-func (w *derivation) with(m *derivation, count int) *derivation {
-	return &derivation{
+// with adds count items that go the way of m. The result is scratch, good until the next call.
+func (d *deriver) with(w, m *derivation, count int) *derivation {
+	d.items = addLoads(d.items[:0], w.load, m.load, count)
+	d.pool.parts = append(append(d.pool.parts[:0], w.parts...), m)
+	d.pool.next = derivation{
 		at: w.at, crossed: w.crossed,
-		parts:     append(w.parts[:len(w.parts):len(w.parts)], m),
-		load:      addLoads(w.load, m.load, count),
+		parts:     d.pool.parts,
+		load:      d.items,
 		crossings: w.crossings + m.crossings,
 		merits:    w.merits&m.merits&exactMerit | (w.merits|m.merits)&^exactMerit,
 		kinds:     w.kinds | m.kinds,
 		passes:    w.passes | m.passes,
 	}
+	return &d.pool.next
 }
 
-// addLoads returns a + count*b.
-func addLoads(a, b []part, count int) []part {
-	if len(a) == 0 && count == 1 {
-		return b
-	}
-	out := make([]part, 0, len(a)+len(b))
+// addLoads appends a + count*b.
+func addLoads(out, a, b []part, count int) []part {
 	for len(a) > 0 || len(b) > 0 {
 		switch {
 		case len(b) == 0 || len(a) > 0 && a[0].at < b[0].at:
@@ -232,24 +238,36 @@ func compareShapes(a, b *derivation) int {
 	return slices.CompareFunc(a.parts, b.parts, compareShapes)
 }
 
-// prune drops dominated derivations, of equal ones those that come later in a tie, and sorts the rest.
-func (d *deriver) prune(all []*derivation) []*derivation {
-	if len(all) <= 1 {
-		return all
-	}
-	slices.SortStableFunc(all, compareWays)
-	var keep []*derivation
-	for _, w := range all {
-		if slices.ContainsFunc(keep, func(x *derivation) bool { return d.dominates(x, w) }) {
-			continue
+// offer adds a way to keep, where no way dominates another: of equal ones the one that comes first in a tie stays. The
+// way may be scratch; it is copied when it is kept.
+func (d *deriver) offer(keep []*derivation, w *derivation) []*derivation {
+	for _, k := range keep {
+		if d.dominates(k, w) && (!d.dominates(w, k) || compareWays(k, w) <= 0) {
+			return keep
 		}
-		keep = slices.DeleteFunc(keep, func(x *derivation) bool { return d.dominates(w, x) })
-		keep = append(keep, w)
 	}
-	if len(keep) > frontierLimit {
-		keep, d.capped = keep[:frontierLimit], true
+	rest := keep[:0]
+	for _, k := range keep {
+		if !d.dominates(w, k) {
+			rest = append(rest, k)
+		}
 	}
-	return keep
+	if len(rest) == frontierLimit {
+		d.capped = true
+		return rest
+	}
+	return append(rest, d.kept(w))
+}
+
+// kept returns the derivation of the node's present set that takes the same step and goes on by the very same
+// derivations, or else a lasting copy: what does not change keeps its identity, and nodes above it need no second look.
+func (d *deriver) kept(w *derivation) *derivation {
+	for _, old := range d.front[w.at] {
+		if old.crossed == w.crossed && slices.Equal(old.parts, w.parts) {
+			return old
+		}
+	}
+	return d.pool.copy(w)
 }
 
 // dominates reports whether a is at least as good as b under every toll that rises with sizes and counts: the items of a

@@ -50,19 +50,23 @@ type network struct {
 	nodes   []node // sorted once explored
 	kinds   []int  // the nodes' kinds, numbered in order
 	edges   [][]edge
+	rising  []int   // nodes in the order of a Load: those of a kind by rising size
 	parents [][]int // nodes with a crossing to this one, each once
 	order   []int   // nodes, those found last first: parts mostly before what they are parts of
 
 	number map[node]int
 	state  []expansion
-	budget int  // visits left
-	capped bool // the budget ran out: nodes may be missing
+	round  int
+	queue  []int // scratch
+	budget int   // visits left
+	capped bool  // the budget ran out: nodes may be missing
 }
 
 // expansion says how far exploration has come at a node.
 type expansion struct {
 	expanded bool // its crossings are known
 	closed   bool // and those of everything behind it
+	round    int  // of spreading that came here last
 	lows     [][]node
 }
 
@@ -125,16 +129,17 @@ func (w *network) spread(root int) bool {
 	if w.state[root].closed {
 		return true
 	}
-	sizes := map[Kind]int{}
-	queue := []int{root}
-	seen := map[int]bool{root: true}
+	w.round++
+	queue := append(w.queue[:0], root)
+	defer func() { w.queue = queue }()
+	w.state[root].round = w.round
 	for k := 0; k < len(queue); k++ {
 		i := queue[k]
-		n := w.nodes[i]
-		if s, ok := sizes[n.kind]; ok && s != n.size {
-			return false
+		for _, earlier := range queue[:k] {
+			if w.nodes[earlier].kind == w.nodes[i].kind {
+				return false
+			}
 		}
-		sizes[n.kind] = n.size
 		if w.budget--; w.budget < 0 {
 			w.capped = true
 			return true
@@ -142,8 +147,8 @@ func (w *network) spread(root int) bool {
 		w.expand(i)
 		for _, e := range w.edges[i] {
 			for _, p := range e.parts {
-				if !seen[p.at] && !w.state[p.at].closed {
-					seen[p.at] = true
+				if s := &w.state[p.at]; s.round != w.round && !s.closed {
+					s.round = w.round
 					queue = append(queue, p.at)
 				}
 			}
@@ -238,6 +243,17 @@ func (w *network) settle() {
 		if nodes[i].kind != nodes[i-1].kind {
 			w.kinds[i]++
 		}
+	}
+	w.rising = make([]int, len(nodes))
+	for from := 0; from < len(nodes); {
+		to := from
+		for to < len(nodes) && w.kinds[to] == w.kinds[from] {
+			to++
+		}
+		for i := from; i < to; i++ {
+			w.rising[i] = from + to - 1 - i
+		}
+		from = to
 	}
 	w.parents = make([][]int, len(nodes))
 	for i := range w.edges {

@@ -187,7 +187,7 @@ var testTolls = map[string]func(Load) Toll{
 }
 
 func readSheet(words []string) (*Sheet, error) {
-	s := &Sheet{Name: words[0], Backend: strings.Split(words[0], "/")[0], Takes: map[Kind]int{}, Returns: LiftsAll, Toll: testTolls["interior"]}
+	s := &Sheet{Name: words[0], Backend: strings.Split(words[0], "/")[0], Takes: map[Kind]int{}, Returns: LiftsAll, Toll: testTolls["interior"], Mounts: true}
 	at := ""
 	for _, w := range words[1:] {
 		switch w {
@@ -200,7 +200,7 @@ func readSheet(words []string) (*Sheet, error) {
 		}
 		switch at {
 		case "toll":
-			s.Toll = testTolls[w]
+			s.Toll, s.Mounts = testTolls[w], w != "flat"
 		case "returns":
 			s.Returns |= readLifts([]string{w})
 		default:

@@ -17,7 +17,7 @@ func (c *choice) route(doubt string) *Route {
 		r.Exactness = max(r.Exactness, c.exactness(w))
 		g.tally(w, 1, totals)
 	}
-	r.Load = c.load(totals)
+	r.Load = c.load(nil, totals)
 	r.Toll = c.sheet.Toll(slices.Clone(r.Load))
 	return r
 }
@@ -29,15 +29,13 @@ func (g *group) tally(w *derivation, sign int, totals []int) {
 	}
 }
 
-// load makes a Load of totals by node.
-func (c *choice) load(totals []int) Load {
-	var l Load
-	for at, count := range totals {
-		if count > 0 {
-			l = append(l, Demand{Kind: c.nodes[at].kind, Size: c.nodes[at].size, Count: count})
+// load appends the items of totals, which go by node.
+func (c *choice) load(l Load, totals []int) Load {
+	for _, at := range c.rising {
+		if totals[at] > 0 {
+			l = append(l, Demand{Kind: c.nodes[at].kind, Size: c.nodes[at].size, Count: totals[at]})
 		}
 	}
-	slices.SortFunc(l, compareDemands)
 	return l
 }
 

@@ -13,7 +13,6 @@ const shownRunnersUp = 12
 type runner struct {
 	group int
 	way   *derivation
-	load  Load
 	toll  Toll
 	key   key
 }
@@ -47,8 +46,14 @@ func (c *choice) runnersUp(chosen *Route) []*Route {
 	slices.SortStableFunc(shown, compareRunners)
 	var out []*Route
 	for _, x := range shown {
-		r := &Route{Sheet: c.sheet, Legs: slices.Clone(chosen.Legs), Load: x.load, Toll: x.toll, Why: c.why(x, chosen)}
-		r.Legs[x.group] = c.leg(x.way, c.groups[x.group].demand)
+		g := &c.groups[x.group]
+		taken := g.ways[c.pick[x.group]]
+		g.tally(taken, -1, totals)
+		g.tally(x.way, 1, totals)
+		r := &Route{Sheet: c.sheet, Legs: slices.Clone(chosen.Legs), Load: c.load(nil, totals), Toll: x.toll, Why: c.why(x, chosen)}
+		g.tally(x.way, -1, totals)
+		g.tally(taken, 1, totals)
+		r.Legs[x.group] = c.leg(x.way, g.demand)
 		r.Exactness = c.exactness(x.way)
 		for k := range c.groups {
 			if k != x.group {
@@ -66,26 +71,34 @@ func (c *choice) alternatives(k int, totals []int) []runner {
 	taken := g.ways[c.pick[k]]
 	g.tally(taken, -1, totals)
 	c.credit(taken, -1)
-	var found []runner
-	all := c.ways(g.at)
-	slices.SortStableFunc(all, compareWays)
-	for _, w := range all {
-		if compareShapes(w, taken) == 0 {
-			continue
-		}
+	judge := func(w *derivation) runner {
 		g.tally(w, 1, totals)
 		c.credit(w, 1)
-		x := runner{group: k, way: w, load: c.load(totals)}
-		x.toll = c.sheet.Toll(slices.Clone(x.load))
+		c.buffer = c.load(c.buffer[:0], totals)
+		x := runner{group: k, way: w, toll: c.sheet.Toll(c.buffer)}
 		x.key = c.weigh(x.toll)
 		c.credit(w, -1)
 		g.tally(w, -1, totals)
-		same := slices.IndexFunc(found, func(y runner) bool { return y.way.crossed == w.crossed })
-		switch {
-		case same < 0:
-			found = append(found, x)
-		case compareRunners(x, found[same]) < 0:
-			found[same] = x
+		return x
+	}
+	var found []runner
+	native := c.native(g.at)
+	if native && taken.crossed != nil {
+		found = append(found, judge(c.asItIs(g.at)))
+	}
+	for i := range c.edges[g.at] {
+		e := &c.edges[g.at][i]
+		if native && c.last[e.rule] {
+			continue
+		}
+		var first []runner
+		for _, w := range c.over(nil, g.at, e) {
+			if compareShapes(w, taken) != 0 {
+				first = append(first, judge(w))
+			}
+		}
+		if len(first) > 0 {
+			found = append(found, slices.MinFunc(first, compareRunners))
 		}
 	}
 	c.credit(taken, 1)

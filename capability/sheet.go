@@ -57,5 +57,10 @@ type Sheet struct {
 	Returns  Lifts
 	Accuracy float64 // relative gap and feasibility that the back end usually reaches
 	// Toll predicts the cost of a load; it must not fall when a size or a count grows.
+	// The load is sorted by kind and size, and is the caller's again when Toll returns.
 	Toll func(Load) Toll
+	// Mounts says that loads cost at least as many seconds together as apart: Toll(a and b) + Toll(nothing) >= Toll(a) +
+	// Toll(b). So it is where counts and sizes enter as powers from the first on, as products, and as maxima that
+	// multiply a total; not where one thing hides behind another. It lets the planner prove much more with much less effort.
+	Mounts bool
 }

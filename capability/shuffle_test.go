@@ -32,9 +32,9 @@ func TestOrderDoesNotMatter(t *testing.T) {
 		}
 		var sheets []*Sheet
 		for i := range 3 {
-			s := &Sheet{Name: fmt.Sprintf("s%d", i), Takes: map[Kind]int{someKinds[r.IntN(5)]: 0, someKinds[r.IntN(5)]: 0}, Returns: LiftsAll, Toll: randomToll(r, someKinds)}
+			s := &Sheet{Name: fmt.Sprintf("s%d", i), Takes: map[Kind]int{someKinds[r.IntN(5)]: 0, someKinds[r.IntN(5)]: 0}, Returns: LiftsAll, Mounts: seed%3 == 0, Toll: randomToll(r, someKinds, seed%3 == 0)}
 			if seed%4 == 0 {
-				s.Toll = func(Load) Toll { return Toll{Seconds: 1} }
+				s.Toll, s.Mounts = func(Load) Toll { return Toll{Seconds: 1} }, false
 			}
 			sheets = append(sheets, s)
 		}

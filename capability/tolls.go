@@ -34,17 +34,16 @@ type Rates struct {
 
 // Counts of the textbooks (Golub and Van Loan, Matrix Computations, from memory).
 const (
-	complexFlops     = 4.0       // a complex multiplication and addition is 8 real flops, a real one 2
-	choleskyFlops    = 1.0 / 3.0 // per cubed order, real
-	bytesPerReal     = 8.0
-	reducedSystemTop = 1e15 // unknowns beyond which cubes are cut off, so that a toll stays a finite number
+	complexFlops  = 4.0       // a complex multiplication and addition is 8 real flops, a real one 2
+	choleskyFlops = 1.0 / 3.0 // per cubed order, real
+	bytesPerReal  = 8.0
 )
 
 // InteriorToll predicts what an interior-point solver takes for a load: iterations times (the cubes of all matrix orders +
 // filling the reduced system + a third of the cube of its order). The reduced system has one unknown per real row and per
 // real free coordinate. The sizes say nothing of how sparse the coefficients are: Product and Entry stand for what is usual.
 //
-// It does not fall when a size or a count grows. A Hermitian matrix of order n costs half of a symmetric one of order
+// It does not fall when a size or a count grows, and it mounts (see Sheet). A Hermitian matrix of order n costs half of a symmetric one of order
 // 2n, 4 n^3 against 8 n^3, and holds half the bytes; unknowns are the same, so the factorisation gains nothing.
 func InteriorToll(l Load, r Rates) Toll {
 	var cubes, coordinates, squares, largest, unknowns float64
@@ -65,7 +64,6 @@ func InteriorToll(l Load, r Rates) Toll {
 			coordinates += count * realCoordinates(d.Kind.Field, n)
 		}
 	}
-	unknowns = min(unknowns, reducedSystemTop)
 	work := r.Matrix*cubes + r.Scalar*coordinates +
 		unknowns*(r.Product*largest+r.Entry*(squares+coordinates)) +
 		r.Pair*unknowns*unknowns + choleskyFlops*unknowns*unknowns*unknowns

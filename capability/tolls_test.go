@@ -47,6 +47,23 @@ func TestInteriorTollRises(t *testing.T) {
 	}
 }
 
+// TestInteriorTollMounts puts random loads together.
+func TestInteriorTollMounts(t *testing.T) {
+	for seed := range uint64(5000) {
+		r := rand.New(rand.NewPCG(seed, 4))
+		some := func() float64 { return float64(r.IntN(3)) * math.Exp(r.NormFloat64()) }
+		rates := Rates{
+			Start: some(), Coefficient: some(), Iterations: some(), Flops: 1 + some(), Matrix: some(), ComplexCore: r.IntN(2) == 0,
+			Scalar: some(), Product: some(), Entry: some(), Pair: some(),
+		}
+		a, b := randomLoad(r), randomLoad(r)
+		together := InteriorToll(slices.Concat(a, b), rates).Seconds + InteriorToll(nil, rates).Seconds
+		if apart := InteriorToll(a, rates).Seconds + InteriorToll(b, rates).Seconds; together < apart*(1-1e-12) {
+			t.Fatalf("seed %d: %v and %v take %v together and %v apart; rates %+v", seed, a, b, together, apart, rates)
+		}
+	}
+}
+
 // TestInteriorTollOfHermitian checks the count of flops by hand: 8 flops per complex multiplication and addition against 2
 // per real one make a Hermitian matrix of order n half as dear as a symmetric one of order 2n.
 func TestInteriorTollOfHermitian(t *testing.T) {
