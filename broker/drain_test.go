@@ -99,6 +99,26 @@ func TestDrainStopsWhatTakesTooLong(t *testing.T) {
 	}
 }
 
+// A stream whose job has not ended when the server stops (as when its record cannot be written) says where to go on.
+func TestDrainEndsStreamsOfJobsThatGoOn(t *testing.T) {
+	s := newStation(t, Config{}, &puppet{"tug", 1, honestly})
+	l := &liveJob{feed: newFeed(), done: make(chan struct{})}
+	l.feed.state(&towpathv1.Job{Id: "ghost"}, time.Now(), false)
+	s.b.mu.Lock()
+	s.b.live["ghost"] = l
+	s.b.mu.Unlock()
+	stream, err := s.jobs.WatchJob(s.ctx(), &towpathv1.WatchJobRequest{JobId: "ghost"})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if _, err := stream.Recv(); err != nil {
+		t.Fatal(err)
+	}
+	s.server.Stop()
+	_, err = stream.Recv()
+	refused(t, err, codes.Unavailable, Draining, "the server is stopping; watch again after sequence 1")
+}
+
 // A back end that does not obey delays the stop, but does not prevent it; its job fails all the same.
 func TestDrainPassesDeafBackEnds(t *testing.T) {
 	if testing.Short() {
