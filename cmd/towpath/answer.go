@@ -6,6 +6,7 @@ import (
 	"strings"
 	"text/tabwriter"
 
+	"towpath/broker/wire"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/protobuf/types/known/durationpb"
@@ -148,7 +149,7 @@ func writeBlocks(w io.Writer, blocks []*towpathv1.BlockValues, all bool, option 
 // writeList shows the numbers of one block or constraint on one line, or, where all are wanted, as many lines as a
 // matrix has rows. Of symmetric and Hermitian matrices the lower triangle is shown, as it is stored.
 func writeList(w io.Writer, name, what string, k int, field towpathv1.Field, rows, cols uint64, n *towpathv1.Numbers, all bool, option string) error {
-	z, err := numbersOf(n)
+	z, err := wire.NumbersFromProto(n)
 	if err != nil {
 		return fmt.Errorf("%s %d of the answer: %w", what, k, err)
 	}

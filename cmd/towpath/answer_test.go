@@ -45,8 +45,9 @@ func TestAnswerAtAGlance(t *testing.T) {
 	for _, fact := range []string{
 		"model      the model", "outcome    optimal", "objective  12.5", "bound      12.4999", "gap        2.0e-09",
 		"checked; every residual is small", "primal 3.0e-10, dual 4.0e-11", "interior 1, sheet interior/real, 9 iterations",
-		"predicted 0.25 s and 3 MiB, measured 31 ms", "note       as said",
-		"7 x map/complex/lorentz of 2  over complex-lorentz/real\n      1 x map/real/lorentz of 3\n  4 x map/real/zero\n",
+		"predicted 250 ms and 3.15 MB, measured 31 ms", "note       as said",
+		"route  interior/real  lowered\n  map/complex/lorentz n=2 x7  over complex-lorentz/real\n" +
+			"    map/real/lorentz n=3 x1   native\n  map/real/zero x4            native\n",
 		"w        complex 8        1-1i  2  3  4  5  6  and 2 more (--values shows them)",
 		"block 1  hermitian 2 x 2  11  21+0.5i  22", "balance  complex 1  3+4i",
 	} {
@@ -120,12 +121,12 @@ func TestExitCodeFollowsTheVerdict(t *testing.T) {
 }
 
 func TestTimesAndSizesAreReadable(t *testing.T) {
-	for s, want := range map[float64]string{0: "0 ms", 0.00012: "0.12 ms", 0.031: "31 ms", 0.25: "0.25 s", 42: "42 s", 3700: "1h1m40s"} {
+	for s, want := range map[float64]string{0: "0 us", 0.0012: "1.2 ms", 0.00012: "120 us", 0.000012: "12 us", 0.031: "31 ms", 0.25: "250 ms", 42: "42 s", 3700: "1h1m40s"} {
 		if got := secondsText(s); got != want {
 			t.Errorf("%g s: %q, want %q", s, got, want)
 		}
 	}
-	for b, want := range map[float64]string{0: "0 B", 1023: "1023 B", 2048: "2 KiB", 5 << 30: "5 GiB"} {
+	for b, want := range map[float64]string{0: "0 kB", 1234: "1.23 kB", 2e6: "2 MB", 5.5e10: "55 GB"} {
 		if got := bytesText(b); got != want {
 			t.Errorf("%g bytes: %q, want %q", b, got, want)
 		}

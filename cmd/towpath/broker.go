@@ -50,6 +50,10 @@ func newBroker(conn grpc.ClientConnInterface, close func()) *broker {
 	return &broker{jobs: towpathv1.NewJobServiceClient(conn), routes: towpathv1.NewRouteServiceClient(conn), close: close}
 }
 
+// inlineLimit is the size up to which a model travels inside its request: well under gRPC's limit of 4 MiB for one
+// message, which also has to hold the options.
+const inlineLimit = 3 << 20
+
 // handOver gives a model to the broker: small ones are returned for the request, large ones are uploaded and named.
 // The model may be changed.
 func (b *broker) handOver(ctx context.Context, m *towpathv1.Model) (inline *towpathv1.Model, id string, err error) {
@@ -63,13 +67,7 @@ func (b *broker) handOver(ctx context.Context, m *towpathv1.Model) (inline *towp
 	if err != nil {
 		return nil, "", fmt.Errorf("uploading the model: %w", err)
 	}
-	parcels := unload(m)
-	err = stream.Send(&towpathv1.UploadModelRequest{Part: &towpathv1.UploadModelRequest_Head{Head: m}})
-	for k := 0; k < len(parcels) && err == nil; k++ {
-		err = parcels[k].sendChunks(func(c *towpathv1.Chunk) error {
-			return stream.Send(&towpathv1.UploadModelRequest{Part: &towpathv1.UploadModelRequest_Chunk{Chunk: c}})
-		})
-	}
+	err = wire.SendModel(m, stream.Send)
 	if err != nil && !errors.Is(err, io.EOF) { // at EOF the broker has ended the stream and says why below
 		return nil, "", fmt.Errorf("uploading the model: %w", err)
 	}
@@ -188,7 +186,7 @@ func (b *broker) fetch(ctx context.Context, id string) (*towpathv1.Answer, error
 	if err != nil {
 		return nil, err
 	}
-	return receiveAnswer(stream.Recv)
+	return wire.ReceiveAnswer(stream.Recv)
 }
 
 // withdraw stops a job on behalf of somebody who has already left: it does not use their context.

@@ -7,6 +7,7 @@ import (
 	"math/cmplx"
 	"text/tabwriter"
 
+	"towpath/broker/wire"
 	"towpath/model/archipelago"
 	towpathv1 "towpath/proto/towpath/v1"
 )
@@ -63,9 +64,9 @@ func routeText(r *towpathv1.Route) string {
 	}
 	names := bridgeNames(r)
 	if len(names) == 1 {
-		return "over " + names[0]
+		return "1 bridge"
 	}
-	return fmt.Sprintf("over %d bridges", len(names))
+	return fmt.Sprintf("%d bridges", len(names))
 }
 
 func objectiveDifference(a, b float64) float64 { return math.Abs(a-b) / (1 + math.Abs(b)) }
@@ -75,8 +76,8 @@ func objectiveDifference(a, b float64) float64 { return math.Abs(a-b) / (1 + mat
 func multiplierDifference(a, b *towpathv1.Answer) float64 {
 	worst, size := 0.0, 1.0
 	compare := func(x, y *towpathv1.Numbers) {
-		p, err := numbersOf(x)
-		q, err2 := numbersOf(y)
+		p, err := wire.NumbersFromProto(x)
+		q, err2 := wire.NumbersFromProto(y)
 		if err != nil || err2 != nil || len(p) != len(q) {
 			worst = math.NaN()
 			return
@@ -131,7 +132,7 @@ func knownDifference(a *towpathv1.Answer, known *archipelago.Known) float64 {
 	for k, expected := range known.Multipliers {
 		got := []complex128(nil)
 		if rows := a.GetMultipliers().GetConstraints(); k < len(rows) {
-			got, _ = numbersOf(rows[k].GetValues())
+			got, _ = wire.NumbersFromProto(rows[k].GetValues())
 		}
 		if len(got) != len(expected) {
 			return math.NaN()

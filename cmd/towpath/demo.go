@@ -22,7 +22,7 @@ func demoCommand() command {
 				if err := none(operands); err != nil {
 					return err
 				}
-				b, err := connect(*address, io)
+				b, err := connect(*address)
 				if err != nil {
 					return err
 				}

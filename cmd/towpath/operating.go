@@ -7,6 +7,7 @@ import (
 	"math/cmplx"
 	"text/tabwriter"
 
+	"towpath/broker/wire"
 	"towpath/model"
 	"towpath/model/archipelago"
 	"towpath/model/grid"
@@ -32,7 +33,7 @@ func writeOperatingPoint(w io.Writer, cases []archipelago.Case, journeys [][]jou
 	var packed []complex128
 	for _, b := range answer.GetValues() {
 		if b.GetName() == grid.VoltageProduct {
-			if packed, err = numbersOf(b.GetEntries()); err != nil {
+			if packed, err = wire.NumbersFromProto(b.GetEntries()); err != nil {
 				return err
 			}
 		}
@@ -53,7 +54,7 @@ func writeOperatingPoint(w io.Writer, cases []archipelago.Case, journeys [][]jou
 		price := complex(math.NaN(), math.NaN())
 		for _, c := range answer.GetMultipliers().GetConstraints() {
 			if c.GetName() == fmt.Sprintf("power balance at bus %d", b.ID) {
-				if y, err := numbersOf(c.GetValues()); err == nil && len(y) == 1 {
+				if y, err := wire.NumbersFromProto(c.GetValues()); err == nil && len(y) == 1 {
 					price = y[0] / complex(n.BaseMVA, 0)
 				}
 			}

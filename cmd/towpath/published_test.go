@@ -70,7 +70,7 @@ func TestPublishedGridBounds(t *testing.T) {
 			if pairs := solveRelaxation(t, b, n, grid.Pairwise, want.SOC); math.Abs(pairs-soc) > boundTolerance*soc {
 				t.Errorf("2 x 2 matrices give %.10g, cones %.10g", pairs, soc)
 			}
-			if testing.Short() && len(n.Buses) > 14 {
+			if want.PSD == nil || testing.Short() && len(n.Buses) > 14 {
 				return
 			}
 			psd := solveRelaxation(t, b, n, grid.Semidefinite, want.PSD)

@@ -178,7 +178,7 @@ func TestJobsTurnsPages(t *testing.T) {
 	if code != exitAnswered {
 		t.Fatalf("code %d: %s", code, stderr)
 	}
-	for _, fact := range []string{"a    answered  optimal  checked", "0.25 s", "grid", "x=1,y=2", "both workers are busy", "there are older jobs"} {
+	for _, fact := range []string{"a    answered  optimal  checked", "250 ms", "grid", "x=1,y=2", "both workers are busy", "there are older jobs"} {
 		if !strings.Contains(out, fact) {
 			t.Errorf("no %q in\n%s", fact, out)
 		}

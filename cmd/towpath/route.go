@@ -4,57 +4,55 @@ import (
 	"fmt"
 	"io"
 	"strings"
+	"text/tabwriter"
 
 	towpathv1 "towpath/proto/towpath/v1"
 )
 
-// writeRoute shows a route as a tree: a line per demand, below it what its bridge makes of it.
+// shownLegs is how many demands a route shows beside an answer; towpath routes shows all.
+const shownLegs = 24
+
+// writeRoute shows the route of an answer as a tree, in the form of the planner's own printer: a line per demand, below it
+// what one of it becomes.
 func writeRoute(w io.Writer, r *towpathv1.Route) {
-	how := fmt.Sprintf("%d of %d demands cross a bridge", crossing(r.GetLegs()), len(r.GetLegs()))
+	how := "lowered"
 	if r.GetNative() {
-		how = "native: no bridge is crossed"
+		how = "native"
 	}
-	fmt.Fprintf(w, "route to %s  (%s; %s)\n", r.GetSheet(), how, exactnessWord(r.GetExactness()))
-	for _, l := range r.GetLegs() {
-		writeLeg(w, l, "  ")
+	fmt.Fprintf(w, "route  %s  %s", r.GetSheet(), how)
+	if r.GetExactness() != towpathv1.Exactness_EXACTNESS_EXACT {
+		fmt.Fprintf(w, "  %s", exactnessWord(r.GetExactness()))
 	}
-	if len(r.GetLoad()) > 0 && !r.GetNative() {
-		loads := make([]string, len(r.GetLoad()))
-		for i, d := range r.GetLoad() {
-			loads[i] = demandText(d)
+	fmt.Fprintln(w)
+	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
+	for k, l := range r.GetLegs() {
+		if k == shownLegs {
+			fmt.Fprintf(t, "  and %d more demands\n", len(r.GetLegs())-k)
+			break
 		}
-		fmt.Fprintf(w, "  the back end takes  %s\n", strings.Join(loads, ",  "))
+		writeLeg(t, l, 1)
 	}
+	t.Flush()
 }
 
-func writeLeg(w io.Writer, l *towpathv1.Leg, indent string) {
-	if l.GetBridge() == "" {
-		fmt.Fprintf(w, "%s%s\n", indent, demandText(l.GetDemand()))
-		return
+func writeLeg(w io.Writer, l *towpathv1.Leg, depth int) {
+	way := "native"
+	if l.GetBridge() != "" {
+		way = "over " + l.GetBridge()
 	}
-	fmt.Fprintf(w, "%s%s  over %s\n", indent, demandText(l.GetDemand()), l.GetBridge())
+	fmt.Fprintf(w, "%s%s\t%s\n", strings.Repeat("  ", depth), demandText(l.GetDemand()), way)
 	for _, p := range l.GetParts() {
-		writeLeg(w, p, indent+"    ")
+		writeLeg(w, p, depth+1)
 	}
 }
 
-// demandText writes a demand as "12 x map/complex/lorentz of 2".
+// demandText writes a demand as the planner does: "map/complex/lorentz n=2 x12".
 func demandText(d *towpathv1.Demand) string {
-	text := fmt.Sprintf("%d x %s", d.GetCount(), d.GetKind())
+	size := ""
 	if d.GetSize() > 1 {
-		text += fmt.Sprintf(" of %d", d.GetSize())
+		size = fmt.Sprintf(" n=%d", d.GetSize())
 	}
-	return text
-}
-
-func crossing(legs []*towpathv1.Leg) int {
-	n := 0
-	for _, l := range legs {
-		if l.GetBridge() != "" {
-			n++
-		}
-	}
-	return n
+	return fmt.Sprintf("%s%s x%d", d.GetKind(), size, d.GetCount())
 }
 
 // bridgeNames lists the bridges that a route crosses, each once, in the order of crossing.

@@ -20,6 +20,7 @@ func routesCommand() command {
 			var source fileFlags
 			address := f.String("address", "", addressUsage)
 			asJSON := f.Bool("json", false, "write the proposals as protobuf JSON and nothing else")
+			all := f.Bool("all", false, "show every sheet's route in full, not only the one that would be taken")
 			job.declare(f)
 			source.declare(f)
 			return func(ctx context.Context, operands []string, io streams) error {
@@ -31,7 +32,7 @@ func routesCommand() command {
 				if err != nil {
 					return err
 				}
-				b, err := connect(*address, io)
+				b, err := connect(*address)
 				if err != nil {
 					return err
 				}
@@ -44,7 +45,7 @@ func routesCommand() command {
 				if *asJSON {
 					err = writeJSON(io, plan)
 				} else {
-					writePlan(io.out, plan, name)
+					writePlan(io.out, plan, name, *all)
 				}
 				if err == nil && !anyRoute(plan) {
 					return quiet(exitUnanswered)
@@ -64,51 +65,35 @@ func anyRoute(plan *towpathv1.PlanRoutesResponse) bool {
 	return false
 }
 
-// writePlan shows first what the model asks for, then one line per sheet, then every proposal in full.
-func writePlan(w io.Writer, plan *towpathv1.PlanRoutesResponse, name string) {
+// writePlan shows first what the model asks for, then one line per sheet, then the chosen route in full, or all.
+func writePlan(w io.Writer, plan *towpathv1.PlanRoutesResponse, name string, all bool) {
 	if name != "" {
 		fmt.Fprintf(w, "model  %s\n\n", name)
 	}
-	fmt.Fprintln(w, "the model asks for")
-	for _, d := range plan.GetDemands() {
-		fmt.Fprintf(w, "  %s, %d coefficients\n", demandText(d), d.GetNonzeros())
-	}
-	fmt.Fprintln(w)
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
-	fmt.Fprintln(t, "\tsheet\tpredicted\tmemory\tbridges\twhy")
+	fmt.Fprintln(t, "the model asks for\tcoefficients")
+	for _, d := range plan.GetDemands() {
+		fmt.Fprintf(t, "  %s\t%d\n", demandText(d), d.GetNonzeros())
+	}
+	fmt.Fprintln(t)
+	t.Flush()
+	fmt.Fprintln(t, "\tsheet\tpredicted\tmemory\troute\twhy")
 	for _, p := range plan.GetProposals() {
 		mark := ""
 		if p.GetChosen() {
 			mark = "*"
 		}
-		seconds, bytes, bridges := "-", "-", "no route"
+		seconds, bytes, way := "-", "-", "none"
 		if r := p.GetRoute(); r != nil {
-			seconds, bytes = secondsText(r.GetToll().GetSeconds()), bytesText(r.GetToll().GetBytes())
-			bridges = fmt.Sprint(len(bridgeNames(r)))
-			if r.GetNative() {
-				bridges = "native"
-			}
+			seconds, bytes, way = secondsText(r.GetToll().GetSeconds()), bytesText(r.GetToll().GetBytes()), routeText(r)
 		}
-		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%s\t%s\n", mark, p.GetSheet(), seconds, bytes, bridges, p.GetReason())
+		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%s\t%s\n", mark, p.GetSheet(), seconds, bytes, way, p.GetReason())
 	}
 	t.Flush()
 	for _, p := range plan.GetProposals() {
-		fmt.Fprintln(w)
-		switch {
-		case p.GetText() != "":
-			fmt.Fprintf(w, "%s\n", strings.TrimRight(p.GetText(), "\n"))
-		case p.GetRoute() != nil:
-			writeRoute(w, p.GetRoute())
-		default:
-			writeUnreachable(w, p)
+		if all || p.GetChosen() || p.GetRoute() == nil {
+			fmt.Fprintf(w, "\n%s\n", strings.TrimRight(p.GetText(), "\n"))
 		}
-	}
-}
-
-func writeUnreachable(w io.Writer, p *towpathv1.Proposal) {
-	fmt.Fprintf(w, "no route to %s\n", p.GetSheet())
-	for _, reason := range p.GetUnreachable().GetReasons() {
-		fmt.Fprintf(w, "  %s\n", reason)
 	}
 }
 
@@ -122,7 +107,7 @@ func backendsCommand() command {
 				if err := none(operands); err != nil {
 					return err
 				}
-				b, err := connect(*address, io)
+				b, err := connect(*address)
 				if err != nil {
 					return err
 				}

@@ -2,17 +2,14 @@ package main
 
 import (
 	"context"
-	"errors"
-	"hash/crc32"
-	"io"
 	"net"
 	"sync"
 	"testing"
 
+	"towpath/broker/wire"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/grpc"
-	"google.golang.org/grpc/codes"
 	"google.golang.org/grpc/credentials/insecure"
 	"google.golang.org/grpc/status"
 	"google.golang.org/protobuf/proto"
@@ -58,6 +55,19 @@ func (s *scripted) serve(t *testing.T) string {
 	return listener.Addr().String()
 }
 
+// streamOf sends an answer as a broker does and returns its messages.
+func streamOf(t *testing.T, a *towpathv1.Answer) (messages []*towpathv1.FetchAnswerResponse) {
+	t.Helper()
+	err := wire.SendAnswer(proto.Clone(a).(*towpathv1.Answer), func(m *towpathv1.FetchAnswerResponse) error {
+		messages = append(messages, m)
+		return nil
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return messages
+}
+
 func (s *scripted) SubmitJob(_ context.Context, r *towpathv1.SubmitJobRequest) (*towpathv1.SubmitJobResponse, error) {
 	s.mu.Lock()
 	defer s.mu.Unlock()
@@ -75,43 +85,10 @@ func (s *scripted) PlanRoutes(_ context.Context, r *towpathv1.PlanRoutesRequest)
 	return &towpathv1.PlanRoutesResponse{}, nil
 }
 
-// UploadModel puts the model together and checks every chunk.
 func (s *scripted) UploadModel(stream grpc.ClientStreamingServer[towpathv1.UploadModelRequest, towpathv1.UploadModelResponse]) error {
-	first, err := stream.Recv()
+	m, err := wire.ReceiveModel(stream.Recv, 1<<30, func(uint64) error { return nil })
 	if err != nil {
 		return err
-	}
-	m := proto.Clone(first.GetHead()).(*towpathv1.Model)
-	arrays := map[uint32]*towpathv1.Array{}
-	left := uint64(0)
-	data := map[uint32][]byte{}
-	eachArray(m.ProtoReflect(), func(a *towpathv1.Array) {
-		if u := a.GetUpload(); u != nil {
-			arrays[u.GetId()] = a
-			left += u.GetSizeBytes()
-		}
-	})
-	for {
-		r, err := stream.Recv()
-		if errors.Is(err, io.EOF) {
-			break
-		}
-		if err != nil {
-			return err
-		}
-		c := r.GetChunk()
-		if arrays[c.GetArray()] == nil || c.GetOffsetBytes() != uint64(len(data[c.GetArray()])) ||
-			crc32.Checksum(c.GetData(), crc32.MakeTable(crc32.Castagnoli)) != c.GetCrc32C() {
-			return status.Error(codes.DataLoss, "bad chunk")
-		}
-		data[c.GetArray()] = append(data[c.GetArray()], c.GetData()...)
-		left -= uint64(len(c.GetData()))
-	}
-	if left != 0 {
-		return status.Errorf(codes.DataLoss, "%d bytes missing", left)
-	}
-	for id, a := range arrays {
-		a.Place = &towpathv1.Array_Data{Data: data[id]}
 	}
 	s.mu.Lock()
 	s.uploaded = append(s.uploaded, m)

@@ -37,7 +37,7 @@ func solveCommand() command {
 				if err != nil {
 					return err
 				}
-				b, err := connect(*address, io)
+				b, err := connect(*address)
 				if err != nil {
 					return err
 				}

@@ -56,29 +56,27 @@ func valueText(x *float64) string {
 	return fmt.Sprintf("%.10g", *x)
 }
 
-// secondsText rounds a time to what one run can tell.
+// secondsText rounds a time to about what one run can tell.
 func secondsText(s float64) string {
 	switch {
 	case math.IsNaN(s):
 		return "-"
-	case s < 0.0995:
-		return fmt.Sprintf("%.2g ms", s*1e3)
-	case s < 100:
-		return fmt.Sprintf("%.2g s", s)
+	case s >= 99.5:
+		return time.Duration(s * float64(time.Second)).Round(time.Second).String()
+	case s >= 1:
+		return fmt.Sprintf("%.3g s", s)
+	case s >= 1e-3:
+		return fmt.Sprintf("%.3g ms", s*1e3)
 	}
-	return time.Duration(s * float64(time.Second)).Round(time.Second).String()
+	return fmt.Sprintf("%.3g us", s*1e6)
 }
 
 func bytesText(b float64) string {
-	const kibi = 1024
-	units := []string{"B", "KiB", "MiB", "GiB", "TiB"}
-	k := 0
-	for b >= kibi && k < len(units)-1 {
-		b /= kibi
-		k++
+	switch {
+	case b >= 1e9:
+		return fmt.Sprintf("%.3g GB", b/1e9)
+	case b >= 1e6:
+		return fmt.Sprintf("%.3g MB", b/1e6)
 	}
-	if b >= 100 {
-		return fmt.Sprintf("%.0f %s", b, units[k])
-	}
-	return fmt.Sprintf("%.3g %s", b, units[k])
+	return fmt.Sprintf("%.3g kB", b/1e3)
 }

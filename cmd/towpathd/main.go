@@ -1,79 +1,58 @@
-// Command towpathd serves Towpath over gRPC.
+// Command towpathd serves the Towpath solver broker over gRPC.
 package main
 
 import (
 	"errors"
 	"flag"
 	"fmt"
-	"net"
+	"io"
 	"os"
 	"os/signal"
 	"syscall"
 
-	"towpath/backends"
-	"towpath/backends/csdp"
-	"towpath/backends/interior"
-	"towpath/broker"
-
 	"go.uber.org/zap"
+	"go.uber.org/zap/zapcore"
 )
 
 func main() {
-	s, err := parseSettings(os.Args[1:], environment)
-	if errors.Is(err, flag.ErrHelp) {
-		writeHelp(os.Stdout)
-		return
-	}
-	if err == nil {
-		err = serve(s)
-	}
-	if err != nil {
-		fmt.Fprintf(os.Stderr, "towpathd: %v\n", err)
-		os.Exit(1)
-	}
+	signals := make(chan os.Signal, 2) // one to drain, one to end at once
+	signal.Notify(signals, syscall.SIGTERM, os.Interrupt)
+	os.Exit(run(os.Args[1:], os.LookupEnv, signals, os.Stdout, os.Stderr))
 }
 
-// serve runs the broker until SIGTERM or SIGINT, then drains it.
-func serve(s *settings) error {
-	c := zap.NewProductionConfig()
-	c.Level = zap.NewAtomicLevelAt(s.logLevel)
-	c.Sampling = nil // no decision may be missing from the log
-	log, err := c.Build()
-	if err != nil {
-		return err
+// Exit codes.
+const (
+	exitServed = 0 // until it was asked to stop
+	exitFailed = 1 // wrong settings, or it could not serve
+	exitForced = 2 // a second signal came while it drained
+)
+
+// run is main without the process.
+func run(args []string, lookup func(string) (string, bool), signals <-chan os.Signal, out, err io.Writer) int {
+	s, failure := parseSettings(args, lookup)
+	if errors.Is(failure, flag.ErrHelp) {
+		writeHelp(out)
+		return exitServed
 	}
-	drivers := []backends.Driver{interior.New()}
-	var absent []broker.Absent
-	if path, ok := csdp.Find(); ok {
-		drivers = append(drivers, csdp.New(path))
-	} else {
-		absent = append(absent, broker.Absent{Backend: "csdp", Cure: "install the Debian package " + csdp.Package})
+	if failure != nil {
+		fmt.Fprintf(err, "towpathd: %v\n", failure)
+		return exitFailed
 	}
-	b, err := broker.New(broker.Config{
-		Workers: s.workers, QueueLimit: s.queue, RunLimit: s.runLimit, LifeLimit: s.lifeLimit,
-		MemoryLimit: uint64(s.memoryLimit), Grace: s.drain,
-	}, drivers, absent, log)
-	if err != nil {
-		return err
+	log := newLog(s.logLevel, err)
+	failure = serve(s, signals, log)
+	_ = log.Sync() // standard error often cannot be synchronized, and there is nobody left to tell
+	switch {
+	case errors.Is(failure, errForced):
+		return exitForced
+	case failure != nil:
+		return exitFailed
 	}
-	l, err := net.Listen("tcp", s.listen)
-	if err != nil {
-		b.Stop()
-		return err
-	}
-	server := broker.NewServer(b)
-	log.Info("serving", zap.String("address", l.Addr().String()))
-	signals := make(chan os.Signal, 1)
-	signal.Notify(signals, syscall.SIGTERM, os.Interrupt)
-	stopped := make(chan struct{})
-	go func() {
-		<-signals
-		server.Stop()
-		close(stopped)
-	}()
-	if err := server.Serve(l); err != nil {
-		return err
-	}
-	<-stopped
-	return nil
+	return exitServed
+}
+
+// newLog returns a logger of JSON lines. It does not sample: no decision may be missing.
+func newLog(level zapcore.Level, w io.Writer) *zap.Logger {
+	c := zap.NewProductionEncoderConfig()
+	c.TimeKey, c.EncodeTime = "time", zapcore.RFC3339NanoTimeEncoder
+	return zap.New(zapcore.NewCore(zapcore.NewJSONEncoder(c), zapcore.Lock(zapcore.AddSync(w)), level))
 }

@@ -6,11 +6,12 @@ import (
 	"fmt"
 	"io"
 	"net"
-	"os"
 	"runtime"
 	"strings"
 	"text/tabwriter"
 	"time"
+
+	"towpath/broker"
 
 	"go.uber.org/zap/zapcore"
 )
@@ -23,7 +24,11 @@ type settings struct {
 	queue       int
 	runLimit    time.Duration
 	lifeLimit   time.Duration
-	memoryLimit int64
+	memoryLimit uint64
+	storeLimit  int64
+	uploadLimit uint64
+	modelLife   time.Duration
+	retain      int
 	drain       time.Duration
 	logLevel    zapcore.Level
 }
@@ -36,7 +41,12 @@ func (s *settings) declare(f *flag.FlagSet) {
 	f.IntVar(&s.queue, "queue-limit", 1000, "refuse jobs when this `number` is waiting")
 	f.DurationVar(&s.runLimit, "run-limit", time.Hour, "stop a solve after this `duration`; jobs may ask for less")
 	f.DurationVar(&s.lifeLimit, "life-limit", 24*time.Hour, "expire a job this `duration` after its submission; jobs may ask for less")
-	f.Int64Var(&s.memoryLimit, "memory-limit", 0, "limit the memory of one solve to this many `bytes`; 0 means no limit")
+	f.Uint64Var(&s.memoryLimit, "memory-limit", 0,
+		"refuse solves predicted to need more than this many `bytes`; 0 takes this machine's memory less the store's, shared by the workers")
+	f.Int64Var(&s.storeLimit, "store-limit", 2<<30, "keep at most this many `bytes` of models and answers; the oldest answers go first")
+	f.Uint64Var(&s.uploadLimit, "upload-limit", 1<<30, "refuse uploaded models whose arrays have more than this many `bytes`")
+	f.DurationVar(&s.modelLife, "model-lifetime", time.Hour, "keep an uploaded model that no job uses for this `duration`")
+	f.IntVar(&s.retain, "retain", 1000, "keep this `number` of ended jobs; the oldest go first")
 	f.DurationVar(&s.drain, "drain-time", 20*time.Second, "on SIGTERM or SIGINT, give running jobs this `duration` before they are stopped")
 	f.TextVar(&s.logLevel, "log-level", zapcore.InfoLevel, "log at this `level` and above: debug, info, warn or error")
 }
@@ -89,10 +99,14 @@ func (s *settings) validate() error {
 		return fmt.Errorf("--queue-limit %d: give at least 1", s.queue)
 	case s.runLimit <= 0 || s.lifeLimit <= 0:
 		return fmt.Errorf("--run-limit %s and --life-limit %s: both must be positive", s.runLimit, s.lifeLimit)
-	case s.memoryLimit < 0:
-		return fmt.Errorf("--memory-limit %d: must not be negative", s.memoryLimit)
-	case s.drain < 0:
-		return fmt.Errorf("--drain-time %s: must not be negative", s.drain)
+	case s.storeLimit < 1 || s.uploadLimit < 1:
+		return fmt.Errorf("--store-limit %d and --upload-limit %d: both must be positive", s.storeLimit, s.uploadLimit)
+	case s.modelLife <= 0:
+		return fmt.Errorf("--model-lifetime %s: must be positive", s.modelLife)
+	case s.retain < 1:
+		return fmt.Errorf("--retain %d: give at least 1", s.retain)
+	case s.drain <= 0:
+		return fmt.Errorf("--drain-time %s: must be positive; 1ms stops running jobs at once", s.drain)
 	}
 	host, _, err := net.SplitHostPort(s.listen)
 	if err != nil {
@@ -103,6 +117,14 @@ func (s *settings) validate() error {
 			"listen on 127.0.0.1, or say --serve-unprotected where the network itself keeps strangers out", s.listen)
 	}
 	return nil
+}
+
+// config is what the broker is told of the settings. All of them are positive or have zero for the default, as there.
+func (s *settings) config() broker.Config {
+	return broker.Config{
+		Workers: s.workers, QueueLimit: s.queue, RunLimit: s.runLimit, LifeLimit: s.lifeLimit, MemoryLimit: s.memoryLimit,
+		StoreLimit: s.storeLimit, UploadLimit: s.uploadLimit, ModelLifetime: s.modelLife, Retain: s.retain, Grace: s.drain,
+	}
 }
 
 // loopback reports whether only this machine reaches the host. A name other than localhost could mean anything.
@@ -128,7 +150,6 @@ func writeHelp(w io.Writer) {
 	t.Flush()
 	fmt.Fprint(w, "\nThe standard health service and reflection are served at the same address.\n"+
 		"On SIGTERM or SIGINT the server stops taking jobs, lets running ones finish within --drain-time, then stops them.\n"+
-		"A second signal ends it at once.\n")
+		"A second signal ends it at once.\n\n"+
+		"Exit codes: 0 served until asked to stop, 1 wrong settings or cannot serve, 2 ended by a second signal.\n")
 }
-
-func environment(name string) (string, bool) { return os.LookupEnv(name) }

@@ -57,6 +57,7 @@ func Relax(n *Network, relaxation Relaxation) (*model.Model, error) {
 	d.model = &model.Model{Name: fmt.Sprintf("%s, %s", n.Name, relaxation)}
 	d.addVoltages()
 	d.addGenerators()
+	d.addFixed()
 	d.addCosts()
 	d.addBalances()
 	d.addBranches()
@@ -137,6 +138,38 @@ func (d *draft) addGenerators() {
 	}
 	d.active = limits(ActivePower, func(g *Generator) (float64, float64) { return g.PMinMW, g.PMaxMW })
 	d.reactive = limits(ReactivePower, func(g *Generator) (float64, float64) { return g.QMinMVAr, g.QMaxMVAr })
+}
+
+// addFixed turns equal lower and upper bounds into an equality. Between two equal bounds there is no interior, and their
+// multipliers have no limit; an equality has neither fault.
+func (d *draft) addFixed() {
+	first := 0
+	for i := range d.model.Blocks {
+		b := &d.model.Blocks[i]
+		for k := range b.Entries() {
+			if !b.RealEntry(k) || b.Bounds.Lower[k] != b.Bounds.Upper[k] {
+				continue
+			}
+			r := rows.New(model.Real, 1)
+			r.Add(0, first+k, 1)
+			r.Const(0, -b.Bounds.Lower[k])
+			b.Bounds.Lower[k], b.Bounds.Upper[k] = complex(math.Inf(-1), 0), complex(math.Inf(1), 0)
+			d.add(r, model.Zero, "%s, fixed at %s", b.Name, d.place(b, k))
+		}
+		first += b.Entries()
+	}
+}
+
+// place names the bus or generator that entry k of a block belongs to.
+func (d *draft) place(b *model.Block, k int) string {
+	switch b.Name {
+	case ActivePower, ReactivePower:
+		return fmt.Sprintf("generator %d at bus %d", k+1, d.generators[k].Bus)
+	case SquaredVoltage:
+		return fmt.Sprintf("bus %d", d.buses[k].ID)
+	}
+	i, _ := model.PackedAt(b.Rows, k)
+	return fmt.Sprintf("bus %d", d.buses[i].ID)
 }
 
 // addCosts writes the objective. The square of an active power is an entry of its own, held above the square by a

@@ -219,3 +219,45 @@ func TestTablesThatCannotBeUsed(t *testing.T) {
 		t.Error("a misspelt column was accepted")
 	}
 }
+
+func TestEqualLimitsBecomeEqualities(t *testing.T) {
+	n := sample()
+	n.Generators[1].PMinMW, n.Generators[1].PMaxMW = 2, 2
+	n.Generators[0].QMinMVAr, n.Generators[0].QMaxMVAr = -1, -1
+	n.Buses[1].VMinPU, n.Buses[1].VMaxPU = 1.05, 1.05
+	for _, relaxation := range []grid.Relaxation{grid.SecondOrder, grid.Semidefinite} {
+		m, err := grid.Relax(n, relaxation)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if err := m.Validate(); err != nil {
+			t.Fatal(err)
+		}
+		x := make([]complex128, m.Starts()[len(m.Blocks)])
+		found := map[string]complex128{}
+		for _, c := range m.Constraints {
+			if strings.Contains(c.Name, ", fixed at ") {
+				found[c.Name] = -evaluate(&c, x)[0]
+				if p := c.Map.Lin.Col; len(p) != 1 || c.Map.Lin.At(0) != 1 || c.Cone.Kind != model.Zero {
+					t.Errorf("%s: %+v", c.Name, c)
+				}
+			}
+		}
+		voltage := grid.SquaredVoltage
+		if relaxation == grid.Semidefinite {
+			voltage = grid.VoltageProduct
+		}
+		for name, want := range map[string]float64{
+			"active power, fixed at generator 2 at bus 5":   0.2,
+			"reactive power, fixed at generator 1 at bus 7": -0.1,
+			voltage + ", fixed at bus 2":                    1.05 * 1.05,
+		} {
+			if got, ok := found[name]; !ok || math.Abs(real(got)-want) > 1e-15 {
+				t.Errorf("%v: %q is %v (there: %v), want %v", relaxation, name, got, ok, want)
+			}
+		}
+		if len(found) != 3 {
+			t.Errorf("%v: fixed %v", relaxation, found)
+		}
+	}
+}
