@@ -82,7 +82,11 @@ func TestDrainStopsWhatTakesTooLong(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	start := time.Now()
 	s.server.Stop()
+	if took := time.Since(start); took > deaf/2 {
+		t.Errorf("stopping took %v although the back end obeys", took)
+	}
 	s.signal(h.ended, "the end of the solve")
 	for {
 		e, err := stream.Recv()
