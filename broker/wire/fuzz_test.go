@@ -2,7 +2,6 @@ package wire
 
 import (
 	"bytes"
-	"io"
 	"math/rand/v2"
 	"runtime"
 	"testing"
@@ -101,7 +100,7 @@ func FuzzStream(f *testing.F) {
 		// in a server is gRPC's to limit, not ours.
 		in := bytes.NewReader(raw)
 		var messages []*towpathv1.UploadModelRequest
-		end := io.EOF
+		var end error
 		for {
 			q := &towpathv1.UploadModelRequest{}
 			if end = protodelim.UnmarshalFrom(in, q); end != nil {
