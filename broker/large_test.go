@@ -7,6 +7,7 @@ import (
 	"net"
 	"os"
 	"runtime"
+	"runtime/debug"
 	"strconv"
 	"strings"
 	"testing"
@@ -43,6 +44,9 @@ func TestTenMillionComplexCoefficients(t *testing.T) {
 		t.Fatal(err)
 	}
 	jobs := towpathv1.NewJobServiceClient(conn)
+	// What is needed is to be measured, not how far the collector lets garbage grow, which depends on what ran before.
+	runtime.GC()
+	defer debug.SetGCPercent(debug.SetGCPercent(25))
 	clear := resetPeak(t)
 	stream, err := jobs.UploadModel(s.ctx())
 	if err != nil {
@@ -59,8 +63,8 @@ func TestTenMillionComplexCoefficients(t *testing.T) {
 	const size = rows * each * (16 + 4)
 	grown := peak(t) - before
 	t.Logf("%d coefficients, %.0f MB of arrays, peak memory grew by %.0f MB", rows*each, size/1e6, float64(grown)/1e6)
-	if clear && grown > 4*size {
-		t.Errorf("peak memory grew by %d bytes, more than four times the model", grown)
+	if clear && grown > 3*size {
+		t.Errorf("peak memory grew by %d bytes, more than three times the model", grown)
 	}
 	if len(r.GetModelId()) != 64 {
 		t.Errorf("named '%s'", r.GetModelId())
