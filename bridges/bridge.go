@@ -3,8 +3,7 @@
 // A bridge says what one item (a block, a map, or the bounds of a block) becomes, as a linear combination of the old
 // rows or of new entries. That is all it has to say: the draft applies the combination to the coefficients, and
 // lifting applies the same combination to values and its adjoint, under the inner products of package model, to
-// multipliers. A factor of two can therefore be lost in one place only, the formula, and the laws of bridgetest
-// look there.
+// multipliers. A factor of two can therefore be lost in one place only, the formula.
 package bridges
 
 import (

@@ -23,7 +23,7 @@ func parts(f model.Field) int {
 //	[[a, conj(z)], [z, d]]  with  a = u, d = v, z = (w1 + i w2)/sqrt2,  2 u v >= w1^2 + w2^2
 //
 // (w2 only for Hermitian blocks.) The map is an isometry: the entry z counts twice, |z|^2 + |z|^2 = w1^2 + w2^2.
-// Toll: a cone of dimension 3 or 4 in place of a matrix; a thousand of them cost a seventh or less, measured.
+// Toll: a cone of dimension 3 or 4 in place of a matrix.
 type orderTwoBlock struct{ rule }
 
 func newOrderTwoBlock(f model.Field) Bridge {

@@ -36,8 +36,8 @@ type merits uint64
 
 const exactMerit merits = 1
 
-// frontierLimit bounds the derivations kept at a node. The catalogue yields fewer than forty, in between and in the end; the limit guards against
-// rules that nobody has written yet, and a route that met it is not called proven.
+// frontierLimit bounds the derivations kept at a node. The catalogue yields fewer than forty, in between and in the end; the
+// limit guards against rules that nobody has written yet, and a route that met it is not called proven.
 const frontierLimit = 96
 
 // crossingLimit bounds the bridges of one derivation, which is a tree: a chain of rules that yield two parts each grows

@@ -30,7 +30,7 @@ func (p *problem) read(r *child.Result) (*model.Answer, error) {
 	if r.Code < solved || r.Code > lastStuck || !there {
 		return nil, fmt.Errorf("csdp ended with code %d and no solution: %s", r.Code, tail(r.Output))
 	}
-	y, z, x, err := p.parse(file)
+	y, x, err := p.parse(file)
 	if err != nil {
 		return nil, fmt.Errorf("csdp's solution file: %w", err)
 	}
@@ -56,7 +56,6 @@ func (p *problem) read(r *child.Result) (*model.Answer, error) {
 	default:
 		a.Outcome = model.Inaccurate
 	}
-	_ = z // the slack follows from y
 	cx, ay := p.trace(x), 0.0
 	for i, v := range p.a {
 		ay += v * y[i]
@@ -71,30 +70,30 @@ func (p *problem) read(r *child.Result) (*model.Answer, error) {
 	return a, nil
 }
 
-// parse reads y in the first line, then lines "1 block i j value" for Z and "2 block i j value" for X. Matrices come back
-// packed by block. Everything is checked: the file is not ours.
-func (p *problem) parse(file []byte) (y []float64, z, x [][]float64, err error) {
+// parse reads y in the first line, then lines "1 block i j value" for Z, which follows from y and is not kept, and
+// "2 block i j value" for X, which comes back packed by block. Everything is checked: the file is not ours.
+func (p *problem) parse(file []byte) (y []float64, x [][]float64, err error) {
 	for _, b := range p.blocks {
 		n := b.size
 		if !b.diagonal {
 			n = model.PackedLen(b.size)
 		}
-		z, x = append(z, make([]float64, n)), append(x, make([]float64, n))
+		x = append(x, make([]float64, n))
 	}
 	in := bufio.NewScanner(bytes.NewReader(file))
 	in.Buffer(nil, len(file)+1)
 	if !in.Scan() {
-		return nil, nil, nil, fmt.Errorf("it is empty")
+		return nil, nil, fmt.Errorf("it is empty")
 	}
 	for _, w := range strings.Fields(in.Text()) {
 		v, err := number(w)
 		if err != nil {
-			return nil, nil, nil, err
+			return nil, nil, err
 		}
 		y = append(y, v)
 	}
 	if len(y) != len(p.a) {
-		return nil, nil, nil, fmt.Errorf("it has %d multipliers for %d rows", len(y), len(p.a))
+		return nil, nil, fmt.Errorf("it has %d multipliers for %d rows", len(y), len(p.a))
 	}
 	for in.Scan() {
 		f := strings.Fields(in.Text())
@@ -102,36 +101,34 @@ func (p *problem) parse(file []byte) (y []float64, z, x [][]float64, err error) 
 			continue
 		}
 		if len(f) != 5 {
-			return nil, nil, nil, fmt.Errorf("line %q does not have 5 fields", in.Text())
+			return nil, nil, fmt.Errorf("line %q does not have 5 fields", in.Text())
 		}
 		var n [4]int
 		for i := range n {
 			if n[i], err = strconv.Atoi(f[i]); err != nil {
-				return nil, nil, nil, err
+				return nil, nil, err
 			}
 		}
 		v, err := number(f[4])
 		if err != nil {
-			return nil, nil, nil, err
+			return nil, nil, err
 		}
 		which, k, i, j := n[0], n[1]-1, n[2], n[3]
 		if i > j {
 			i, j = j, i
 		}
 		if which < 1 || which > 2 || k < 0 || k >= len(p.blocks) || i < 1 || j > p.blocks[k].size || p.blocks[k].diagonal && i != j {
-			return nil, nil, nil, fmt.Errorf("line %q names no entry", in.Text())
+			return nil, nil, fmt.Errorf("line %q names no entry", in.Text())
 		}
 		at := i - 1
 		if !p.blocks[k].diagonal {
 			at = model.PackedIndex(p.blocks[k].size, j-1, i-1)
 		}
-		if which == 1 {
-			z[k][at] = v
-		} else {
+		if which == 2 {
 			x[k][at] = v
 		}
 	}
-	return y, z, x, in.Err()
+	return y, x, in.Err()
 }
 
 func number(w string) (float64, error) {
@@ -177,31 +174,28 @@ func (p *problem) values(x [][]float64) *model.Point {
 // rows gives -y to the rows of an equality model.
 func (p *problem) rows(y []float64) *model.Multipliers {
 	out := p.noMultipliers()
-	n := 0
-	for k := range out.Constraints {
-		for r := range out.Constraints[k] {
-			if at := p.where[n]; at >= 0 {
-				out.Constraints[k][r] = complex(-y[at], 0)
-			}
-			n++
-		}
-	}
+	p.spread(out.Constraints, y, -1)
 	return out
 }
 
 // columns gives y to the entries of an inequality model.
 func (p *problem) columns(y []float64) *model.Point {
 	out := p.noPoint()
+	p.spread(out.Values, y, 1)
+	return out
+}
+
+// spread writes times y to the places that have a row in the file.
+func (p *problem) spread(into [][]complex128, y []float64, times float64) {
 	n := 0
-	for k := range out.Values {
-		for e := range out.Values[k] {
+	for k := range into {
+		for i := range into[k] {
 			if at := p.where[n]; at >= 0 {
-				out.Values[k][e] = complex(y[at], 0)
+				into[k][i] = complex(times*y[at], 0)
 			}
 			n++
 		}
 	}
-	return out
 }
 
 // matrices gives X to the constraints of an inequality model.
