@@ -110,7 +110,7 @@ func (d Demand) String() string {
 
 // String gives seconds and bytes for people.
 func (t Toll) String() string {
-	return secondsText(t.Seconds) + ", " + bytesText(t.Bytes)
+	return secondsText(t.Seconds) + ", " + BytesText(t.Bytes)
 }
 
 func secondsText(s float64) string {
@@ -127,7 +127,8 @@ func secondsText(s float64) string {
 	return fmt.Sprintf("%.3g us", s*1e6)
 }
 
-func bytesText(b float64) string {
+// BytesText gives a number of bytes for people, three digits and a decimal unit.
+func BytesText(b float64) string {
 	switch {
 	case b >= 1e9:
 		return fmt.Sprintf("%.3g GB", b/1e9)

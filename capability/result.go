@@ -57,7 +57,7 @@ func (c *choice) illegal(r *Route) string {
 
 // tooLarge says how much memory the leanest route needs, for what, and what would help.
 func (c *choice) tooLarge(r *Route) string {
-	text := fmt.Sprintf("%s needs %s on the leanest route, and %s are allowed", c.sheet.Name, bytesText(r.Toll.Bytes), bytesText(c.maxBytes))
+	text := fmt.Sprintf("%s needs %s on the leanest route, and %s are allowed", c.sheet.Name, BytesText(r.Toll.Bytes), BytesText(c.maxBytes))
 	help := "raise the limit"
 	if len(r.Legs) > 0 && len(r.Legs) <= shownLegs {
 		shares := r.Shares()
@@ -67,7 +67,7 @@ func (c *choice) tooLarge(r *Route) string {
 				k = i
 			}
 		}
-		text += fmt.Sprintf("; without %s it would be %s less", r.Legs[k].Demand, bytesText(shares[k].Bytes))
+		text += fmt.Sprintf("; without %s it would be %s less", r.Legs[k].Demand, BytesText(shares[k].Bytes))
 		if r.Legs[k].Bridge != "" {
 			help += fmt.Sprintf(", or use a sheet that takes %s natively", r.Legs[k].Demand.Kind)
 		}

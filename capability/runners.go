@@ -114,7 +114,7 @@ func (c *choice) why(x runner, chosen *Route) string {
 	case x.key.missing > c.now.missing:
 		return "it has no item of a kind that the sheet needs"
 	case x.key.over > c.now.over:
-		return fmt.Sprintf("it needs %s, which is over the limit", bytesText(x.toll.Bytes))
+		return fmt.Sprintf("it needs %s, which is over the limit", BytesText(x.toll.Bytes))
 	case c.dominates(taken, x.way) && c.dominates(x.way, taken):
 		return "it comes to the same, " + tie(taken, x.way)
 	case c.dominates(taken, x.way):

@@ -7,6 +7,7 @@ import (
 	"text/tabwriter"
 
 	"towpath/broker/wire"
+	"towpath/capability"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/protobuf/types/known/durationpb"
@@ -40,7 +41,7 @@ func writeAnswer(w io.Writer, a *towpathv1.Answer, name string, s show) error {
 	line("residuals", "%s", residualsText(e))
 	line("back end", "%s %s, sheet %s, %d iterations", a.GetBackend(), a.GetBackendVersion(), a.GetRoute().GetSheet(), a.GetIterations())
 	line("toll", "predicted %s and %s, measured %s", secondsText(a.GetRoute().GetToll().GetSeconds()),
-		bytesText(a.GetRoute().GetToll().GetBytes()), durationText(a.GetTimings().GetSolved()))
+		capability.BytesText(a.GetRoute().GetToll().GetBytes()), durationText(a.GetTimings().GetSolved()))
 	if tm := a.GetTimings(); tm != nil {
 		line("time", "waited %s, planned %s, lowered %s, solved %s, lifted %s, examined %s",
 			durationText(tm.GetWaited()), durationText(tm.GetPlanned()), durationText(tm.GetLowered()),

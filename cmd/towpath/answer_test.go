@@ -6,6 +6,7 @@ import (
 	"testing"
 	"time"
 
+	"towpath/capability"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/protobuf/proto"
@@ -127,7 +128,7 @@ func TestTimesAndSizesAreReadable(t *testing.T) {
 		}
 	}
 	for b, want := range map[float64]string{0: "0 kB", 1234: "1.23 kB", 2e6: "2 MB", 5.5e10: "55 GB"} {
-		if got := bytesText(b); got != want {
+		if got := capability.BytesText(b); got != want {
 			t.Errorf("%g bytes: %q, want %q", b, got, want)
 		}
 	}

@@ -8,6 +8,7 @@ import (
 	"strings"
 	"text/tabwriter"
 
+	"towpath/capability"
 	towpathv1 "towpath/proto/towpath/v1"
 )
 
@@ -85,7 +86,7 @@ func writePlan(w io.Writer, plan *towpathv1.PlanRoutesResponse, name string, all
 		}
 		seconds, bytes, way := "-", "-", "none"
 		if r := p.GetRoute(); r != nil {
-			seconds, bytes, way = secondsText(r.GetToll().GetSeconds()), bytesText(r.GetToll().GetBytes()), routeText(r)
+			seconds, bytes, way = secondsText(r.GetToll().GetSeconds()), capability.BytesText(r.GetToll().GetBytes()), routeText(r)
 		}
 		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%s\t%s\n", mark, p.GetSheet(), seconds, bytes, way, p.GetReason())
 	}

@@ -70,13 +70,3 @@ func secondsText(s float64) string {
 	}
 	return fmt.Sprintf("%.3g us", s*1e6)
 }
-
-func bytesText(b float64) string {
-	switch {
-	case b >= 1e9:
-		return fmt.Sprintf("%.3g GB", b/1e9)
-	case b >= 1e6:
-		return fmt.Sprintf("%.3g MB", b/1e6)
-	}
-	return fmt.Sprintf("%.3g kB", b/1e3)
-}

@@ -30,11 +30,6 @@ func serve(s *settings, signals <-chan os.Signal, log *zap.Logger) error {
 		return err
 	}
 	server := broker.NewServer(b)
-	for _, d := range drivers {
-		for _, sheet := range d.Sheets() {
-			log.Info("back end present", zap.String("backend", sheet.Backend), zap.String("version", sheet.Version), zap.String("sheet", sheet.Name))
-		}
-	}
 	if s.unprotected {
 		log.Warn("serving without encryption and login: whoever reaches the address may use it", zap.String("address", listener.Addr().String()))
 	}
@@ -48,7 +43,7 @@ func serve(s *settings, signals <-chan os.Signal, log *zap.Logger) error {
 		log.Error("serving ended", zap.Error(err))
 		return err
 	case got := <-signals:
-		log.Info("draining", zap.Stringer("signal", got), zap.Duration("grace", s.drain))
+		log.Info("asked to stop", zap.Stringer("signal", got)) // the broker logs how it drains
 	}
 	drained := make(chan struct{})
 	go func() {
@@ -57,7 +52,6 @@ func serve(s *settings, signals <-chan os.Signal, log *zap.Logger) error {
 	}()
 	select {
 	case <-drained:
-		log.Info("drained")
 		return nil
 	case got := <-signals:
 		log.Warn("ending at once", zap.Stringer("signal", got))
