@@ -1,5 +1,7 @@
 package model
 
+import "slices"
+
 // Model is one optimization model. See the package comment for its meaning.
 type Model struct {
 	Name        string
@@ -117,4 +119,10 @@ func (m *Model) Starts() []int {
 		s[k+1] = s[k] + m.Blocks[k].Entries()
 	}
 	return s
+}
+
+// blockOf returns the block whose entries include the column; starts are those of Starts.
+func blockOf(starts []int, col uint32) int {
+	k, _ := slices.BinarySearch(starts, int(col)+1) // the first start beyond the column
+	return k - 1
 }

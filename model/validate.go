@@ -3,7 +3,6 @@ package model
 import (
 	"fmt"
 	"math"
-	"slices"
 	"unicode"
 	"unicode/utf8"
 )
@@ -205,8 +204,8 @@ func rounding(x complex128) bool {
 
 // find gives the block of a column and the entry in it.
 func (v *validator) find(col uint32) (block, entry int) {
-	k, _ := slices.BinarySearch(v.starts, int(col)+1)
-	return k - 1, int(col) - v.starts[k-1]
+	block = blockOf(v.starts, col)
+	return block, int(col) - v.starts[block]
 }
 
 func (v *validator) realColumn(col uint32) bool {
