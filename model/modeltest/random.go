@@ -176,9 +176,43 @@ func (g *garden) infeasible(m *model.Model) *model.Answer {
 	// The dual objective without this row is <sum, x>, because every pair is opposite: with the constant it is 1.
 	last.Map.Const = []complex128{complex(inner-1, 0)}
 	m.Constraints = append(m.Constraints, last)
-	g.aim(m, &model.Point{Values: g.noise(m)})
+	g.aim(m, g.price(m, z))
 	return &model.Answer{Outcome: model.Infeasible, Objective: math.NaN(), Bound: math.NaN(),
 		Farkas: &model.Multipliers{Constraints: append(g.y, []complex128{1}), Bounds: z}}
+}
+
+// price is an objective for which there are multipliers, so that an infeasible model is not unbounded as well: the F^* y + z
+// + s of other multipliers, which push where the certificate's do.
+func (g *garden) price(m *model.Model, z [][]complex128) *model.Point {
+	sum := &model.Point{}
+	for b := range m.Blocks {
+		v := make([]complex128, m.Blocks[b].Entries())
+		_, s := g.pair(blank(shape{m.Blocks[b].Field, m.Blocks[b].Cone}, len(v)))
+		copy(v, s)
+		for k := range z[b] {
+			v[k] += 2 * z[b][k]
+		}
+		sum.Values = append(sum.Values, v)
+	}
+	for k := range m.Constraints {
+		y := g.noiseRow()
+		if k < len(g.y) {
+			y = scaled(g.y[k], 0.5+g.rng.Float64())
+		}
+		sum = plus(sum, m.AdjointAt(k, y))
+	}
+	return sum
+}
+
+// noiseRow is a multiplier for one real equality.
+func (g *garden) noiseRow() []complex128 { return []complex128{g.number(false)} }
+
+func scaled(v []complex128, by float64) []complex128 {
+	out := make([]complex128, len(v))
+	for k, x := range v {
+		out[k] = complex(by, 0) * x
+	}
+	return out
 }
 
 // unbounded lets the pivot, the first entry, take the maps of a ray to where their cones recede.
