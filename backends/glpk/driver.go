@@ -177,6 +177,7 @@ func (d *Driver) run(ctx context.Context, p *program, o backends.Options) (*solu
 	if err != nil {
 		return nil, fmt.Errorf("glpk: glpsol's solution file: %w", err)
 	}
+	s.columnDuals = p.reducedCosts(s.rowDuals)
 	s.pivots, s.words = pivots, status(r.Output)
 	return s, nil
 }

@@ -134,6 +134,18 @@ func (p *program) multipliers(rowDuals, columnDuals []float64) *model.Multiplier
 	return out
 }
 
+// reducedCosts is cost - A^T y. glpsol prints reduced costs too, but each rounded on its own, and a certificate lives of
+// their agreement with the row duals.
+func (p *program) reducedCosts(y []float64) []float64 {
+	d := append([]float64(nil), p.cost...)
+	for r, v := range y {
+		for q := p.start[r]; q < p.start[r+1]; q++ {
+			d[p.column[q]] -= v * p.value[q]
+		}
+	}
+	return d
+}
+
 // dualObjective is the constant plus what rows and bounds push.
 func (p *program) dualObjective(s *solution) float64 {
 	return p.constant + pushes(s.rowDuals, p.rowLower, p.rowUpper) + pushes(s.columnDuals, p.lower, p.upper)

@@ -9,6 +9,9 @@ import (
 	"path/filepath"
 	"strings"
 
+	"towpath/broker/wire"
+	"towpath/model"
+	"towpath/model/exchange"
 	towpathv1 "towpath/proto/towpath/v1"
 
 	"google.golang.org/protobuf/encoding/protojson"
@@ -17,7 +20,9 @@ import (
 
 const fileHelp = `FILE is a model in one of these formats, told by its name's ending; - reads standard input.
   json    Model of towpath.v1 as protobuf JSON        .json
-  binary  Model of towpath.v1 as protobuf             .pb .binpb`
+  binary  Model of towpath.v1 as protobuf             .pb .binpb
+  sdpa    semidefinite program, SDPA sparse format    .dat-s
+  mps     linear program, free MPS format             .mps`
 
 // format is one way of writing a model in a file.
 type format struct {
@@ -30,6 +35,8 @@ func formats() []format {
 	return []format{
 		{"json", []string{".json"}, parseJSON},
 		{"binary", []string{".pb", ".binpb"}, parseBinary},
+		{"sdpa", []string{".dat-s"}, foreign(exchange.ReadSDPA)},
+		{"mps", []string{".mps"}, foreign(exchange.ReadMPS)},
 	}
 }
 
@@ -37,7 +44,7 @@ func formats() []format {
 type fileFlags struct{ format string }
 
 func (f *fileFlags) declare(flags *flag.FlagSet) {
-	flags.StringVar(&f.format, "format", "", "the file's `format`, whatever its name: json or binary")
+	flags.StringVar(&f.format, "format", "", "the file's `format`, whatever its name: json, binary, sdpa or mps")
 }
 
 // read returns the model of the one file that the operands name.
@@ -83,13 +90,13 @@ func (f *fileFlags) choose(name string, data []byte) (format, error) {
 		}
 	}
 	if f.format != "" {
-		return format{}, usageError("--format %s: there are json and binary", f.format)
+		return format{}, usageError("--format %s: there are json, binary, sdpa and mps", f.format)
 	}
 	// Of the four only JSON begins with a brace.
 	if bytes.HasPrefix(bytes.TrimLeft(data, " \t\r\n"), []byte("{")) {
 		return formats()[0], nil
 	}
-	return format{}, usageError("%s: its name does not tell the format; say --format json or binary", name)
+	return format{}, usageError("%s: its name does not tell the format; say --format json, binary, sdpa or mps", name)
 }
 
 func parseJSON(data []byte) (*towpathv1.Model, error) {
@@ -112,4 +119,15 @@ func parseBinary(data []byte) (*towpathv1.Model, error) {
 func protoError(err error) error {
 	text := strings.ReplaceAll(err.Error(), "\u00a0", " ")
 	return fmt.Errorf("%s", strings.TrimPrefix(text, "proto: "))
+}
+
+// foreign reads a format of the trade.
+func foreign(read func(io.Reader) (*model.Model, error)) func([]byte) (*towpathv1.Model, error) {
+	return func(data []byte) (*towpathv1.Model, error) {
+		m, err := read(bytes.NewReader(data))
+		if err != nil {
+			return nil, err
+		}
+		return wire.ModelToProto(m), nil
+	}
 }

@@ -147,6 +147,34 @@ func TestStandardInputAndBinary(t *testing.T) {
 	}
 }
 
+// TestFormatsOfTheTrade solves what the examples say of themselves, by their names' endings and by --format.
+func TestFormatsOfTheTrade(t *testing.T) {
+	for _, c := range []struct {
+		name, format string
+		want         float64
+	}{{"mail-boats.mps", "mps", 9.5}, {"two-masts.dat-s", "sdpa", 2}} {
+		file := filepath.Join("examples", c.name)
+		other := filepath.Join(t.TempDir(), "model")
+		text, err := os.ReadFile(file)
+		if err == nil {
+			err = os.WriteFile(other, text, 0o600)
+		}
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, args := range [][]string{{file}, {"--format", c.format, other}} {
+			code, out, stderr := towpath(t, "", append([]string{"solve", "--json"}, args...)...)
+			if code != exitAnswered {
+				t.Errorf("%v: code %d: %s", args, code, stderr)
+				continue
+			}
+			if a := answerIn(t, out); math.Abs(a.GetObjective()-c.want) > 1e-6 {
+				t.Errorf("%v: objective %.10g, want %g", args, a.GetObjective(), c.want)
+			}
+		}
+	}
+}
+
 func TestUnreadableModelsAreExplained(t *testing.T) {
 	for _, c := range []struct {
 		name, text string
@@ -155,6 +183,9 @@ func TestUnreadableModelsAreExplained(t *testing.T) {
 		{"a.json", `{"blocks": [{"nome": "x"}]}`, []string{"a.json", "nome"}},
 		{"a.json", `{"blocks": `, []string{"a.json", "read as json"}},
 		{"a.pb", "\xff\xff", []string{"a.pb", "read as binary"}},
+		{"a.mps", "ROWS\n Q  X\n", []string{"a.mps, read as mps", "line 2: row kind Q is unknown"}},
+		{"a.dat-s", "2\n1\n", []string{"a.dat-s, read as sdpa", "it ends after 0 of 1 block sizes"}},
+		{"a.mps", "ROWS\n N c\nCOLUMNS\n x c 1\nBOUNDS\n LO x 3\n UP x 2\nENDATA\n", []string{"block 0 'x'", "lower limit 3"}},
 		{"a.txt", "hello", []string{"a.txt", "--format"}},
 		{"a.json", `{}`, []string{"block"}},
 		{"a.json", `{"blocks":[{"name":"x","field":"FIELD_REAL","rows":1}],"constraints":[{"name":"bound on x","field":"FIELD_REAL","rows":1,
@@ -214,7 +245,7 @@ func TestBackendsAreListed(t *testing.T) {
 	if code != exitAnswered {
 		t.Fatalf("code %d: %s", code, stderr)
 	}
-	for _, fact := range []string{"interior", "interior/complex", "block/hermitian/psd", "csdp"} {
+	for _, fact := range []string{"interior", "interior/complex", "block/hermitian/psd", "csdp", "glpk"} {
 		if !strings.Contains(out, fact) {
 			t.Errorf("no %q in\n%s", fact, out)
 		}

@@ -4,6 +4,7 @@ package registry
 import (
 	"towpath/backends"
 	"towpath/backends/csdp"
+	"towpath/backends/glpk"
 	"towpath/backends/interior"
 	"towpath/broker"
 )
@@ -16,6 +17,7 @@ func Backends() (drivers []backends.Driver, absent []broker.Absent) {
 	}
 	for _, p := range []program{
 		{"csdp", csdp.Package, csdp.Find, func(path string) backends.Driver { return csdp.New(path) }},
+		{"glpk", glpk.Package, glpk.Find, func(path string) backends.Driver { return glpk.New(path) }},
 	} {
 		if path, ok := p.find(); ok {
 			drivers = append(drivers, p.open(path))

@@ -14,7 +14,7 @@ func TestEveryBackEndIsHereOrMissed(t *testing.T) {
 			got[d.Sheets()[0].Backend] = true
 		}
 		for _, a := range absent {
-			if a.Cure != "install the Debian package coinor-csdp" {
+			if a.Cure != "install the Debian package "+map[string]string{"csdp": "coinor-csdp", "glpk": "glpk-utils"}[a.Backend] {
 				t.Errorf("%s is missed without a word that helps: %q", a.Backend, a.Cure)
 			}
 			got[a.Backend] = false
@@ -28,8 +28,9 @@ func TestEveryBackEndIsHereOrMissed(t *testing.T) {
 			t.Errorf("got %v, want %v", got, want)
 		}
 	}
-	_, err := exec.LookPath("csdp")
-	check(map[string]bool{"interior": true, "csdp": err == nil})
+	_, noCSDP := exec.LookPath("csdp")
+	_, noGLPK := exec.LookPath("glpsol")
+	check(map[string]bool{"interior": true, "csdp": noCSDP == nil, "glpk": noGLPK == nil})
 	t.Setenv("PATH", t.TempDir())
-	check(map[string]bool{"interior": true, "csdp": false})
+	check(map[string]bool{"interior": true, "csdp": false, "glpk": false})
 }
