@@ -13,7 +13,8 @@ type Crossing struct {
 	Lowered *model.Model // always a minimization; may share arrays with the client's model
 
 	d            *draft
-	blocks, maps int // of the client's model: the first ones of the draft
+	blocks, maps int    // of the client's model: the first ones of the draft
+	bounded      []bool // which of those blocks have bounds
 }
 
 // Cross lowers a valid model along the route. The model is not modified. An error means that route and model, or a
@@ -32,7 +33,9 @@ func Cross(m *model.Model, route *capability.Route, catalogue []Bridge) (*Crossi
 		}
 	}
 	for k := range d.maps {
-		items = append(items, item{capability.OnMap, k})
+		if !d.maps[k].gone {
+			items = append(items, item{capability.OnMap, k})
+		}
 	}
 	// Bounds go first: a block cannot be lowered from under them.
 	legs := slices.Clone(route.Legs)
@@ -42,7 +45,11 @@ func Cross(m *model.Model, route *capability.Route, catalogue []Bridge) (*Crossi
 	if err := g.follow(legs, 1, items); err != nil {
 		return nil, fmt.Errorf("cross to %s: %w", route.Sheet.Name, err)
 	}
-	return &Crossing{Lowered: d.finish(m.Name), d: d, blocks: len(m.Blocks), maps: len(m.Constraints)}, nil
+	x := &Crossing{Lowered: d.finish(m.Name), d: d, blocks: len(m.Blocks), maps: len(m.Constraints)}
+	for i := range m.Blocks {
+		x.bounded = append(x.bounded, m.Blocks[i].Bounds != nil)
+	}
+	return x, nil
 }
 
 func boundsFirst(l capability.Leg) int {

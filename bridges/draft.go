@@ -47,17 +47,24 @@ type item struct {
 	number int
 }
 
-// newDraft copies what lowering may change; arrays of coefficients are shared with the model.
+// newDraft copies what lowering may change; arrays of coefficients are shared with the model. Bounds and range rows without
+// a finite limit say nothing: they count as no item and are left behind, with multipliers of zero.
 func newDraft(m *model.Model) *draft {
 	d := &draft{obj: m.Objective}
 	for i := range m.Blocks {
 		b := m.Blocks[i]
 		bounds := b.Bounds
+		if bounds != nil {
+			if _, sides := capability.MeasureBounds(&b); sides == 0 {
+				bounds = nil
+			}
+		}
 		b.Bounds = nil
 		d.addBlock(b, bounds)
 	}
 	for k := range m.Constraints {
-		d.maps = append(d.maps, draftMap{c: m.Constraints[k]})
+		_, _, sides := capability.MeasureMap(&m.Constraints[k])
+		d.maps = append(d.maps, draftMap{c: m.Constraints[k], gone: sides == 0})
 	}
 	return d
 }

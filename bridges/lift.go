@@ -83,6 +83,16 @@ func (x *Crossing) liftMultipliers(y *model.Multipliers) *model.Multipliers {
 			bounds[c.number] = adjoint(c.low, maps[c.image:], b.Entries(), b.RealEntry, b.Weight)
 		}
 	}
+	for i := range x.maps { // those that were left behind
+		if maps[i] == nil {
+			maps[i] = make([]complex128, d.maps[i].c.Map.Rows())
+		}
+	}
+	for i := range x.blocks {
+		if x.bounded[i] && bounds[i] == nil {
+			bounds[i] = make([]complex128, d.blocks[i].block.Entries())
+		}
+	}
 	return &model.Multipliers{Constraints: maps[:x.maps:x.maps], Bounds: bounds[:x.blocks:x.blocks]}
 }
 

@@ -125,12 +125,12 @@ func (s *sheet) cross(t *testing.T, m *model.Model) (x crossed, ok bool) {
 
 // solve runs the driver on a lowered model and examines what comes back. The lowered model must not be changed.
 func (s *sheet) solve(ctx context.Context, x crossed, o backends.Options) (*model.Answer, check.Report, error) {
-	before := fmt.Sprintf("%v", *x.Lowered)
+	before := modeltest.Copy(x.Lowered)
 	a, err := s.driver.Solve(ctx, s.Name, x.Lowered, o)
 	if err != nil {
 		return nil, check.Report{}, err
 	}
-	if after := fmt.Sprintf("%v", *x.Lowered); after != before {
+	if !reflect.DeepEqual(x.Lowered, before) {
 		return nil, check.Report{}, fmt.Errorf("the driver changed its model")
 	}
 	lifted := x.Lift(a)

@@ -102,6 +102,9 @@ func (g *garden) constraints() {
 	for k := range 2 + g.rng.IntN(5) {
 		s := shapes[g.rng.IntN(len(shapes))]
 		rows := 2 + g.rng.IntN(3)
+		if s.cone == model.Lorentz {
+			rows = 1 + g.rng.IntN(4)
+		}
 		if s.field.IsMatrix() {
 			rows = model.PackedLen(1 + g.rng.IntN(3))
 		}
@@ -223,6 +226,7 @@ func (g *garden) unbounded(m *model.Model) *model.Answer {
 		ray.Values = append(ray.Values, d)
 	}
 	ray.Values[0][0] = 1
+	g.recedingBounds(m, ray)
 	for k := range m.Constraints {
 		c := &m.Constraints[k]
 		goal := make([]complex128, c.Map.Rows())

@@ -67,6 +67,38 @@ func (g *garden) bounds(m *model.Model) [][]complex128 {
 	return z
 }
 
+// recedingBounds gives some blocks limits that hold their entries and all of a ray from there.
+func (g *garden) recedingBounds(m *model.Model, ray *model.Point) {
+	sides := func(x, d float64) (lower, upper float64) {
+		lower, upper, _ = g.interval(x)
+		switch {
+		case d > 0:
+			upper = math.Inf(1)
+		case d < 0:
+			lower = math.Inf(-1)
+		}
+		return lower, upper
+	}
+	for b := range m.Blocks {
+		blk := &m.Blocks[b]
+		if g.rng.IntN(3) > 0 {
+			continue
+		}
+		n := blk.Entries()
+		box := &model.Bounds{Lower: make([]complex128, n), Upper: make([]complex128, n)}
+		for k := range n {
+			x, d := g.x[b][k], ray.Values[b][k]
+			lo, up := sides(real(x), real(d))
+			var ilo, iup float64
+			if !blk.RealEntry(k) {
+				ilo, iup = sides(imag(x), imag(d))
+			}
+			box.Lower[k], box.Upper[k] = complex(lo, ilo), complex(up, iup)
+		}
+		blk.Bounds = box
+	}
+}
+
 // addFirstColumn adds a first column of the given numbers to a matrix.
 func addFirstColumn(a *model.Matrix, column []complex128) model.Matrix {
 	out := model.Matrix{Start: make([]int, len(a.Start))}
