@@ -52,7 +52,7 @@ func InteriorToll(l Load, r Rates) Toll {
 		n, count := float64(d.Size), float64(d.Count)
 		switch d.Kind.Cone {
 		case model.Zero, model.Free:
-			unknowns += count * realCoordinates(d.Kind.Field, n)
+			unknowns += count * realCoordinates(d.Kind, n)
 		case model.PSD:
 			weight, width := 1.0, 1.0
 			if d.Kind.Field == model.Hermitian || r.ComplexCore {
@@ -62,7 +62,7 @@ func InteriorToll(l Load, r Rates) Toll {
 			squares += count * width * n * n
 			largest = max(largest, weight*n*n*n)
 		default:
-			coordinates += count * realCoordinates(d.Kind.Field, n)
+			coordinates += count * realCoordinates(d.Kind, n)
 		}
 	}
 	work := r.Matrix*cubes + r.Scalar*coordinates +
@@ -74,10 +74,16 @@ func InteriorToll(l Load, r Rates) Toll {
 	}
 }
 
-// realCoordinates counts the real numbers in one item of a size.
-func realCoordinates(f model.Field, n float64) float64 {
-	switch f {
+// realCoordinates counts the real numbers in one item of a size. The heads of complex lorentz cones are real.
+func realCoordinates(k Kind, n float64) float64 {
+	switch k.Field {
 	case model.Complex:
+		switch k.Cone {
+		case model.Lorentz:
+			return 2*n - 1
+		case model.RotatedLorentz:
+			return 2*n - 2
+		}
 		return 2 * n
 	case model.Symmetric:
 		return n * (n + 1) / 2
@@ -85,15 +91,4 @@ func realCoordinates(f model.Field, n float64) float64 {
 		return n * n
 	}
 	return n
-}
-
-// PortableRates are those of a solver in plain Go without assembly kernels: about 6e9 flops per second in products of
-// complex matrices (BenchmarkMul of the interior-point engine's dense kernels: 5.7e9, median at orders 32 to 128, one core
-// of a 2-core server, December 2026). The counts per iteration are common practice, no source.
-func PortableRates() Rates {
-	return Rates{
-		Start: 1e-4, Iterations: 15, Flops: 6e9,
-		Matrix: 80, Scalar: 100, Product: 4, Entry: 4, Pair: 30,
-		Bytes: 1e5, Copies: 2, Matrices: 12,
-	}
 }

@@ -110,7 +110,7 @@ func TestInteriorTollStaysFinite(t *testing.T) {
 			l = append(l, Demand{Kind: Kind{OnMap, model.Field(f), model.ConeKind(c)}, Size: math.MaxInt, Count: math.MaxInt})
 		}
 	}
-	if got := InteriorToll(l, PortableRates()); math.IsInf(got.Seconds, 0) || math.IsNaN(got.Seconds) || math.IsInf(got.Bytes, 0) {
+	if got := InteriorToll(l, testRates); math.IsInf(got.Seconds, 0) || math.IsNaN(got.Seconds) || math.IsInf(got.Bytes, 0) {
 		t.Errorf("%v", got)
 	}
 }

@@ -78,34 +78,15 @@ func (d *Driver) Sheets() []capability.Sheet {
 	return []capability.Sheet{equality, inequality}
 }
 
-// Constants of the toll. They are estimates, fitted to nothing yet.
-const (
-	iterations = 16
-	rate       = 8e9   // flops per second
-	start      = 10e-3 // seconds to start and read
-	perNonzero = 4e-7  // seconds to write and read one coefficient
-	perUnknown = 40.0  // flops per unknown and block entry when the Schur complement is formed
-)
-
-// toll counts matrix products, the forming and the factorisation of the dense Schur complement, and text.
-func toll(l capability.Load) capability.Toll {
-	var unknowns, cubes, squares, linear float64
-	for _, d := range l {
-		n, count := float64(d.Size), float64(d.Count)
-		switch d.Kind.Cone {
-		case model.PSD:
-			cubes += count * n * n * n
-			squares += count * n * n
-		case model.Zero, model.Free:
-			unknowns += count
-		default:
-			linear += count * n
-		}
-	}
-	work := 60*cubes + unknowns*perUnknown*(squares+linear) + unknowns*unknowns*unknowns/3 + unknowns*unknowns*10
-	text := perNonzero * (squares + linear + unknowns)
-	return capability.Toll{Seconds: start + text + iterations*work/rate, Bytes: 6e6 + 8*unknowns*unknowns + 80*squares + 100*linear}
+// rates are estimates, fitted to nothing yet. csdp works with a tuned BLAS; forming its Schur complement costs little where
+// coefficients are sparse.
+var rates = capability.Rates{
+	Start: 10e-3, Coefficient: 4e-7, Iterations: 16, Flops: 8e9,
+	Matrix: 60, Scalar: 60, Product: 0, Entry: 40, Pair: 10,
+	Bytes: 6e6, Copies: 1, Matrices: 12,
 }
+
+func toll(l capability.Load) capability.Toll { return capability.InteriorToll(l, rates) }
 
 // Solve implements backends.Driver.
 func (d *Driver) Solve(ctx context.Context, sheet string, m *model.Model, o backends.Options) (*model.Answer, error) {
