@@ -34,6 +34,14 @@ func newStation(t *testing.T) *station {
 	} else {
 		t.Logf("csdp is absent (Debian package %s): its routes are not tested", csdp.Package)
 	}
+	s := newStationOf(t, drivers...)
+	s.csdp = ok
+	return s
+}
+
+// newStationOf starts a broker with the given back ends.
+func newStationOf(t *testing.T, drivers ...backends.Driver) *station {
+	t.Helper()
 	b, err := broker.New(broker.Config{}, drivers, nil, zap.NewNop())
 	if err != nil {
 		t.Fatal(err)
@@ -43,8 +51,7 @@ func newStation(t *testing.T) *station {
 		t.Fatal(err)
 	}
 	t.Cleanup(closeAll)
-	s := &station{jobs: towpathv1.NewJobServiceClient(conn), routes: towpathv1.NewRouteServiceClient(conn), csdp: ok}
-	return s
+	return &station{jobs: towpathv1.NewJobServiceClient(conn), routes: towpathv1.NewRouteServiceClient(conn)}
 }
 
 // solve sends the model through gRPC and returns the answer, as sent and in the model's terms.
