@@ -3,15 +3,11 @@ package model
 import (
 	"fmt"
 	"math"
-	"unicode"
-	"unicode/utf8"
 )
 
 const (
 	// MaxEntries is the largest number of entries: columns are 32-bit.
 	MaxEntries = math.MaxUint32
-	// MaxName is the longest name in bytes.
-	MaxName = 256
 	// MaxOrder is the largest order of a matrix: its packed length stays within MaxEntries.
 	MaxOrder = 92681
 )
@@ -40,14 +36,6 @@ func (v *validator) fault(path, place, problem, cure string) {
 	if len(v.faults) < shownFaults {
 		v.faults = append(v.faults, Fault{path, place, problem, cure})
 	}
-}
-
-// titled names a block or a constraint for people.
-func titled(what string, k int, name string) string {
-	if name == "" {
-		return fmt.Sprintf("%s %d", what, k)
-	}
-	return fmt.Sprintf("%s %d '%s'", what, k, name)
 }
 
 func (v *validator) model() {
@@ -88,42 +76,17 @@ func (v *validator) model() {
 	}
 }
 
-func (v *validator) unique(path, place, what, name string, k int, seen map[string]int) {
-	if name == "" || !v.name(path+".name", fmt.Sprintf("%s %d", what, k), name) {
-		return
-	}
-	if first, ok := seen[name]; ok {
-		v.fault(path+".name", place, fmt.Sprintf("%s %d has the same name", what, first), "give every "+what+" its own name, or none")
-		return
-	}
-	seen[name] = k
-}
-
-func (v *validator) name(path, place, name string) bool {
-	switch {
-	case len(name) > MaxName:
-		v.fault(path, place, fmt.Sprintf("its name has %d bytes", len(name)), fmt.Sprintf("use at most %d", MaxName))
-	case !utf8.ValidString(name):
-		v.fault(path, place, "its name is not UTF-8", "send UTF-8")
-	default:
-		for _, r := range name {
-			if unicode.IsControl(r) {
-				v.fault(path, place, fmt.Sprintf("its name has the control character %U", r), "use printable characters")
-				return false
-			}
-		}
-		return true
-	}
-	return false
-}
-
 func (v *validator) block(path, place string, b *Block) bool {
 	if b.Field > Hermitian {
 		v.fault(path+".field", place, fmt.Sprintf("field number %d is unknown", b.Field), "use real, complex, symmetric or hermitian")
 		return false
 	}
 	if b.Rows < 1 || b.Cols < 1 {
-		v.fault(path+".rows", place, fmt.Sprintf("its shape is %d x %d", b.Rows, b.Cols), "give at least one row and one column")
+		side := ".rows"
+		if b.Rows >= 1 {
+			side = ".cols"
+		}
+		v.fault(path+side, place, fmt.Sprintf("its shape is %d x %d", b.Rows, b.Cols), "give at least one row and one column")
 		return false
 	}
 	if b.Field.IsMatrix() {
@@ -146,7 +109,9 @@ func (v *validator) block(path, place string, b *Block) bool {
 	case Symmetric, Hermitian:
 		allowed = allowed || b.Cone == PSD
 	}
-	if !allowed {
+	if b.Cone > Box {
+		v.fault(path+".cone", place, fmt.Sprintf("cone number %d is unknown", b.Cone), "use free, nonneg, lorentz, rotated-lorentz or psd")
+	} else if !allowed {
 		v.fault(path+".cone", place, fmt.Sprintf("a %s block cannot lie in the cone %s", b.Field, b.Cone),
 			"real blocks may be free, nonneg, lorentz or rotated-lorentz, complex ones free, matrices free or psd; write other sets as constraints")
 	} else if b.Cone == RotatedLorentz && b.Entries() < 2 {
@@ -257,13 +222,13 @@ func (v *validator) column(path, place string, cols []uint32, k, from int) bool 
 	return true
 }
 
-func (v *validator) coefficient(path, place string, col uint32, x complex128, realRow bool) {
+func (v *validator) coefficient(path, place string, col uint32, x complex128, realSum bool) {
 	if !isFinite(x) {
 		v.fault(path, place, fmt.Sprintf("the coefficient on %s is %v", v.entryName(col), x), "send finite numbers")
 		return
 	}
-	if realRow && !rounding(x) && v.realColumn(col) {
-		v.fault(path, place, fmt.Sprintf("the coefficient %v on %s, which is real, has an imaginary part, and the row is real", x, v.entryName(col)),
-			"make the coefficient real, or the row complex")
+	if realSum && !rounding(x) && v.realColumn(col) {
+		v.fault(path, place, fmt.Sprintf("the coefficient %v on %s has an imaginary part, but the entry and the sum are real", x, v.entryName(col)),
+			"make the coefficient real")
 	}
 }

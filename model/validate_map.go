@@ -17,10 +17,17 @@ func mapCones(f Field) []ConeKind {
 	return []ConeKind{Zero, PSD}
 }
 
+// onConjugates ends the place of a fault in Map.Conj, which people could not tell from one in Map.Lin otherwise.
+const onConjugates = ", coefficients on conjugates"
+
 func (v *validator) constraint(path, place string, c *Constraint) {
 	f := &c.Map
 	if f.Field > Hermitian {
 		v.fault(path+".field", place, fmt.Sprintf("field number %d is unknown", f.Field), "use real, complex, symmetric or hermitian")
+		return
+	}
+	if c.Cone.Kind > Box {
+		v.fault(path+".cone", place, fmt.Sprintf("cone number %d is unknown", c.Cone.Kind), "use zero, nonneg, range, lorentz, rotated-lorentz or psd")
 		return
 	}
 	if !slices.Contains(mapCones(f.Field), c.Cone.Kind) {
@@ -49,7 +56,7 @@ func (v *validator) constraint(path, place string, c *Constraint) {
 			v.fault(path+".map.conj", place, fmt.Sprintf("it has %d rows of coefficients and %d of coefficients on conjugates", n, f.Conj.Rows()), "give as many of both")
 			return
 		}
-		sound = v.matrix(path+".map.conj", place, f.Conj, n) && sound
+		sound = v.matrix(path+".map.conj", place+onConjugates, f.Conj, n) && sound
 	}
 	if f.Const != nil && len(f.Const) != n {
 		v.fault(path+".map.const", place, fmt.Sprintf("it has %d constants for %d rows", len(f.Const), n), "give one per row, or none")
@@ -74,7 +81,7 @@ func (v *validator) matrix(path, place string, m *Matrix, n int) bool {
 	}
 	for r := range n {
 		if m.Start[r+1] < m.Start[r] {
-			return bad(fmt.Sprintf("the start of row %d is %d, after %d", r+1, m.Start[r+1], m.Start[r]), "row starts never fall")
+			return bad(fmt.Sprintf("row %d begins at %d and ends at %d", r, m.Start[r], m.Start[r+1]), "give row starts that never fall")
 		}
 	}
 	if m.Re != nil && m.Z != nil {
@@ -97,6 +104,7 @@ func (v *validator) row(path, place string, c *Constraint, r int) {
 		v.coefficient(path+".map.lin", at, f.Lin.Col[p], f.Lin.At(p), realRow)
 	}
 	if f.Conj != nil {
+		at := at + onConjugates
 		for p := f.Conj.Start[r]; p < f.Conj.Start[r+1]; p++ {
 			if !v.column(path+".map.conj", at, f.Conj.Col, p, f.Conj.Start[r]) {
 				return
