@@ -108,7 +108,7 @@ func (d *Driver) Solve(ctx context.Context, sheet string, m *model.Model, o back
 	}
 	a.Iterations, a.Note = s.pivots, "glpsol: "+s.words
 	switch {
-	case s.primal == 'f' && s.dual == 'f':
+	case s.optimal():
 		a.Outcome = model.Optimal
 		a.Point, a.Multipliers = p.point(s.columns), p.multipliers(s.rowDuals, s.columnDuals)
 		a.Objective, a.Bound = m.ObjectiveAt(a.Point), p.dualObjective(s)
@@ -124,9 +124,19 @@ func (d *Driver) Solve(ctx context.Context, sheet string, m *model.Model, o back
 	return a, err
 }
 
+// patience is how long a program may take in rational arithmetic.
+const patience = 10 * time.Second
+
 // explain solves the second program and takes a certificate from it.
 func (d *Driver) explain(ctx context.Context, p *program, a *model.Answer, o backends.Options, second func(*program) *program, take func(*solution, *model.Answer)) error {
-	s, err := d.run(ctx, second(p), o)
+	// A certificate is a matter of the last digits, so rational arithmetic comes first.
+	short, cancel := context.WithTimeout(ctx, patience)
+	defer cancel()
+	q := second(p)
+	s, err := d.run(short, q, o, "--exact")
+	if (s == nil || !s.optimal()) && err == nil && ctx.Err() == nil { // it takes too long, or gives up, which it does at times
+		s, err = d.run(ctx, q, o)
+	}
 	if err != nil {
 		return err
 	}
@@ -136,18 +146,18 @@ func (d *Driver) explain(ctx context.Context, p *program, a *model.Answer, o bac
 	}
 	a.Iterations += s.pivots
 	a.Outcome = model.Inaccurate // unless a certificate is found
-	if s.primal == 'f' && s.dual == 'f' {
+	if s.optimal() {
 		take(s, a)
 	}
 	return nil
 }
 
 // run solves one program; nil without an error means that ctx ended.
-func (d *Driver) run(ctx context.Context, p *program, o backends.Options) (*solution, error) {
+func (d *Driver) run(ctx context.Context, p *program, o backends.Options, more ...string) (*solution, error) {
 	c := child.Command{
 		Path: d.path, Read: []string{"out"}, MaxMemory: o.MaxMemory,
 		// With the presolver on, which is the default, infeasible and unbounded programs come back undefined.
-		Args:  []string{"--freemps", "in.mps", "--nopresol", "-w", "out"},
+		Args:  append([]string{"--freemps", "in.mps", "--nopresol", "-w", "out"}, more...),
 		Files: map[string][]byte{"in.mps": p.text()},
 	}
 	pivots, began := 0, time.Now()

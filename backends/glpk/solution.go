@@ -22,6 +22,8 @@ type solution struct {
 	haveRows, haveColumns int
 }
 
+func (s *solution) optimal() bool { return s.primal == 'f' && s.dual == 'f' }
+
 // parse reads a basic solution: "s bas ROWS COLUMNS PRIMAL DUAL OBJECTIVE", then "i ROW STATE VALUE DUAL" and "j COLUMN
 // STATE VALUE DUAL" for every row and column. Everything is checked: the file is not ours.
 func parse(file []byte, rows, columns int) (*solution, error) {

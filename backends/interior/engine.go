@@ -20,7 +20,7 @@ const (
 )
 
 const (
-	defaultTolerance  = 1e-9
+	defaultTolerance  = 1e-8
 	defaultIterations = 200
 	// certificates are judged at this residual; looser ones are taken only when the iteration is stuck anyway
 	looseCertificate = 1e-6
@@ -30,6 +30,8 @@ const (
 	stepFraction       = 0.99
 	leastStep          = 1e-9
 	leastCentering     = 1e-8
+	// A direction that leaves more than this share of the residuals is compared with those of the other regularities.
+	inexact = 1e-2
 	// Iterations after the tolerance is met, and by how much each has to improve.
 	polishing  = 5
 	polishGain = 0.5
@@ -92,12 +94,14 @@ func (f *form) run(ctx context.Context, o backends.Options) (end ending, last *s
 		if ctx.Err() != nil {
 			return stop(endStopped, iter)
 		}
-		if iter == limit || !f.scale(s) || !v.prepare(s) {
+		if iter == limit {
 			return stop(endStuck, iter)
 		}
-		d := v.predictCorrect(r)
-		step = min(1, stepFraction*f.step(s, d, 1/stepFraction))
-		if !(step >= leastStep) {
+		var d *direction
+		if f.scale(s) {
+			d, step = v.firmest(s, r)
+		}
+		if d == nil || !(step >= leastStep) {
 			return stop(endStuck, iter)
 		}
 		s.move(d, step)
@@ -117,8 +121,31 @@ func (f *form) scale(s *state) (ok bool) {
 	return true
 }
 
-// predictCorrect finds the direction of one iteration.
-func (v *newton) predictCorrect(r *residuals) *direction {
+// firmest finds the direction and the step of one iteration. It begins with the regularity that served last; where that
+// leaves the direction inexact it tries the others and takes the one after which the least is left of the residuals.
+func (v *newton) firmest(s *state, r *residuals) (best *direction, step float64) {
+	least, chosen := math.Inf(1), v.firm
+	for k := range firmness {
+		level := (v.firm + k) % len(firmness)
+		v.k.regularity = firmness[level]
+		if !v.prepare(s) {
+			continue
+		}
+		d, short := v.predictCorrect(r)
+		alpha := min(1, stepFraction*v.f.step(s, d, 1/stepFraction))
+		if after := 1 - alpha + alpha*short; after < least {
+			best, step, least, chosen = d, alpha, after, level
+		}
+		if short <= inexact {
+			break
+		}
+	}
+	v.firm = chosen
+	return best, step
+}
+
+// predictCorrect finds a direction, and the share of the residuals that it fails to address.
+func (v *newton) predictCorrect(r *residuals) (d *direction, short float64) {
 	f, s := v.f, v.s
 	mu := f.mu(s)
 	pair := make([][]float64, len(f.items))
@@ -126,13 +153,14 @@ func (v *newton) predictCorrect(r *residuals) *direction {
 		pair[i] = make([]float64, it.dim())
 		it.corrector(pair[i], 0, nil, nil)
 	}
-	affine := v.solve(r, 1, pair, -s.tau*s.kappa)
+	affine, _ := v.solve(r, 1, pair, -s.tau*s.kappa)
 	alpha := f.step(s, affine, 1)
 	sigma := max(math.Pow(1-alpha, 3), leastCentering)
 	for i, it := range f.items {
 		it.corrector(pair[i], sigma*mu, affine.p[i], affine.q[i])
 	}
-	return v.solve(r, 1-sigma, pair, sigma*mu-s.tau*s.kappa-affine.tau*affine.kappa)
+	d, left := v.solve(r, 1-sigma, pair, sigma*mu-s.tau*s.kappa-affine.tau*affine.kappa)
+	return d, left / max(r.size(), math.SmallestNonzeroFloat64)
 }
 
 // step is the largest common step, at most limit.

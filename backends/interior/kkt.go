@@ -17,25 +17,30 @@ import (
 type kkt struct {
 	f *form
 	n int
-	k []float64 // lower triangle by rows
+	k []float64 // lower triangle by rows, equilibrated
 	l []float64
 	d []float64
+	e []float64 // equilibration: the system is E K E
+	regularity
 }
 
 const (
-	// Relative and absolute regularisation: far below what refinement repairs, far above rounding.
-	regularRelative = 1e-13
-	regularAbsolute = 1e-13
-	// A pivot below pivotFloor has lost its sign; pivotRepair takes its place (dependent rows, columns nobody uses).
-	pivotFloor  = 1e-13
-	pivotRepair = 1e-7
-	refinements = 8
-	panel       = 48 // columns factored at a time
+	equilibrations = 4
+	refinements    = 3
+	panel          = 48 // columns factored at a time
 )
+
+// regularity is how firmly the equilibrated system is regularised. A pivot below floor has lost its sign and is replaced by
+// repair (dependent rows, columns nobody uses).
+type regularity struct{ shift, floor, repair float64 }
+
+// firmness lists what is tried in turn. The first bounds steps along directions in which next to nothing curves, which
+// unbounded and infeasible models have; the last costs no accuracy but needs a sound system.
+var firmness = []regularity{{1e-8, 1e-9, 1e-5}, {1e-10, 1e-11, 1e-6}, {1e-13, 1e-13, 1e-7}}
 
 func newKKT(f *form) *kkt {
 	n := f.rows + f.free
-	return &kkt{f: f, n: n, k: make([]float64, n*n), l: make([]float64, n*n), d: make([]float64, n)}
+	return &kkt{f: f, n: n, k: make([]float64, n*n), l: make([]float64, n*n), d: make([]float64, n), e: make([]float64, n), regularity: firmness[0]}
 }
 
 // build forms the matrix at the present scalings and factors it; ok is false when it holds NaN.
@@ -51,15 +56,47 @@ func (s *kkt) build() (ok bool) {
 	for _, it := range s.f.items {
 		s.gram(it)
 	}
+	s.equilibrate()
 	for i := range n {
 		copy(s.l[i*n:i*n+i+1], s.k[i*n:i*n+i+1])
-		delta := regularRelative*math.Abs(s.l[i*n+i]) + regularAbsolute
+		delta := s.shift
 		if i >= s.f.rows {
 			delta = -delta
 		}
 		s.l[i*n+i] += delta
 	}
 	return s.factor()
+}
+
+// equilibrate scales rows and columns to largest numbers near one (D. Ruiz 2001, from memory): near the end the scalings of
+// the cones span twenty orders of magnitude, and what is small of one row is not small of another.
+func (s *kkt) equilibrate() {
+	n := s.n
+	for i := range s.e {
+		s.e[i] = 1
+	}
+	largest := make([]float64, n)
+	for range equilibrations {
+		clear(largest)
+		for i := range n {
+			for j, v := range s.k[i*n : i*n+i+1] {
+				v = math.Abs(v)
+				largest[i], largest[j] = max(largest[i], v), max(largest[j], v)
+			}
+		}
+		for i, v := range largest {
+			largest[i] = 1
+			if v > 0 && !math.IsInf(v, 0) {
+				largest[i] = math.Exp2(-math.Round(math.Log2(v) / 2)) // powers of two round nothing
+			}
+			s.e[i] *= largest[i]
+		}
+		for i := range n {
+			for j := range s.k[i*n : i*n+i+1] {
+				s.k[i*n+j] *= largest[i] * largest[j]
+			}
+		}
+	}
 }
 
 // gram adds D' H D of a block, or subtracts D' H^-1 D of a map.
@@ -155,8 +192,8 @@ func (s *kkt) factorPanel(j0, j1 int) bool {
 		if math.IsNaN(d) {
 			return false
 		}
-		if !(d*sign > pivotFloor) {
-			d = sign * pivotRepair
+		if !(d*sign > s.floor) {
+			d = sign * s.repair
 		}
 		s.d[j] = d
 		for i := j + 1; i < n; i++ {
@@ -198,6 +235,10 @@ func (s *kkt) multiply(dst, x []float64) {
 
 // solve returns x with K x = g as far as refinement gets.
 func (s *kkt) solve(g []float64) []float64 {
+	g = append([]float64(nil), g...)
+	for i := range g {
+		g[i] *= s.e[i]
+	}
 	x := append([]float64(nil), g...)
 	s.backsolve(x)
 	r := make([]float64, s.n)
@@ -216,6 +257,9 @@ func (s *kkt) solve(g []float64) []float64 {
 		for i := range x {
 			x[i] += r[i]
 		}
+	}
+	for i := range x {
+		x[i] *= s.e[i]
 	}
 	return x
 }

@@ -7,6 +7,8 @@ type newton struct {
 	f *form
 	s *state
 	k *kkt
+	// firm is the place in firmness that served last.
+	firm int
 	// response to one unit of tau
 	x    []float64
 	p, q [][]float64
@@ -67,33 +69,51 @@ func (v *newton) prepare(s *state) (ok bool) {
 }
 
 // rounds bounds the refinement of the whole system.
-const rounds = 6
+const rounds = 12
 
 // solve gives the direction that removes the fraction eta of the residuals. The whole system is refined, not only its
-// reduced form: dQ = H^-1 (...) loses digits near the boundary that F'dQ then misses.
-func (v *newton) solve(r *residuals, eta float64, pair [][]float64, kappa float64) *direction {
+// reduced form: dQ = H^-1 (...) loses digits near the boundary that F'dQ then misses, and the regularisation of the reduced
+// system leaves weak directions short. Generalized conjugate residuals, with the factored system as preconditioner
+// (Eisenstat, Elman and Schultz 1983, from memory): what is left never grows, and its size is returned too.
+func (v *newton) solve(r *residuals, eta float64, pair [][]float64, kappa float64) (d *direction, short float64) {
 	e := &side{x: scaled(r.x, -eta), pair: pair, gap: -eta * r.gap, kappa: kappa}
 	for _, t := range r.item {
 		e.item = append(e.item, scaled(t, -eta))
 	}
-	best := v.once(e)
-	left := v.left(e, best)
+	d = v.once(e)
+	left := v.left(e, d)
+	goal := 1e-16 * (1 + e.size())
+	var steps []*direction
+	var effects []*side
 	for range rounds {
-		if left.size() <= 1e-16 {
+		before := left.size()
+		if before <= goal || math.IsNaN(before) || math.IsInf(before, 0) {
 			break
 		}
-		next := best.plus(v.once(left))
-		after := v.left(e, next)
-		if !(after.size() < left.size()) {
+		step := v.once(left)
+		effect := left.minus(v.left(left, step), 1)
+		for range 2 { // once is not enough when steps are nearly dependent
+			for i := range steps {
+				b := effect.dot(effects[i])
+				step.add(-b, steps[i])
+				effect = effect.minus(effects[i], b)
+			}
+		}
+		n := effect.size()
+		if !(n > 0) || math.IsInf(n, 0) {
 			break
 		}
-		gained := after.size() < 0.5*left.size()
-		best, left = next, after
-		if !gained {
+		step.times(1 / n)
+		effect = effect.times(1 / n)
+		a := left.dot(effect)
+		d.add(a, step)
+		left = left.minus(effect, a)
+		steps, effects = append(steps, step), append(effects, effect)
+		if !(left.size() < 0.9*before) {
 			break
 		}
 	}
-	return best
+	return d, left.size()
 }
 
 func scaled(x []float64, f float64) []float64 {
@@ -113,19 +133,64 @@ func (e *side) size() float64 {
 	return n
 }
 
-func (d *direction) plus(c *direction) *direction {
-	sum := func(a, b []float64) []float64 {
-		out := make([]float64, len(a))
-		for i := range out {
-			out[i] = a[i] + b[i]
-		}
-		return out
+// dot is the inner product that goes with size.
+func (e *side) dot(o *side) float64 {
+	t := dot(e.x, o.x) + e.gap*o.gap
+	for i := range e.item {
+		t += dot(e.item[i], o.item[i])
 	}
-	out := &direction{x: sum(d.x, c.x), tau: d.tau + c.tau, kappa: d.kappa + c.kappa}
-	for i := range d.p {
-		out.p, out.q = append(out.p, sum(d.p[i], c.p[i])), append(out.q, sum(d.q[i], c.q[i]))
+	return t
+}
+
+// minus returns e - a o.
+func (e *side) minus(o *side, a float64) *side {
+	out := &side{x: combined(e.x, o.x, -a), gap: e.gap - a*o.gap, kappa: e.kappa - a*o.kappa}
+	for i := range e.item {
+		out.item = append(out.item, combined(e.item[i], o.item[i], -a))
+		out.pair = append(out.pair, combined(e.pair[i], o.pair[i], -a))
 	}
 	return out
+}
+
+func (e *side) times(a float64) *side {
+	out := &side{x: scaled(e.x, a), gap: a * e.gap, kappa: a * e.kappa}
+	for i := range e.item {
+		out.item, out.pair = append(out.item, scaled(e.item[i], a)), append(out.pair, scaled(e.pair[i], a))
+	}
+	return out
+}
+
+func combined(x, y []float64, a float64) []float64 {
+	out := make([]float64, len(x))
+	for i := range out {
+		out[i] = x[i] + a*y[i]
+	}
+	return out
+}
+
+// add adds a c to the direction.
+func (d *direction) add(a float64, c *direction) {
+	into := func(x, y []float64) {
+		for i := range x {
+			x[i] += a * y[i]
+		}
+	}
+	into(d.x, c.x)
+	d.tau += a * c.tau
+	d.kappa += a * c.kappa
+	for i := range d.p {
+		into(d.p[i], c.p[i])
+		into(d.q[i], c.q[i])
+	}
+}
+
+func (d *direction) times(a float64) {
+	d.x = scaled(d.x, a)
+	d.tau *= a
+	d.kappa *= a
+	for i := range d.p {
+		d.p[i], d.q[i] = scaled(d.p[i], a), scaled(d.q[i], a)
+	}
 }
 
 // left returns the right-hand side minus what the direction achieves.

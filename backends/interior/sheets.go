@@ -46,7 +46,7 @@ func (d *Driver) Sheets() []capability.Sheet {
 	rows(all, model.Complex, model.Lorentz)
 	rows(all, model.Hermitian, model.PSD)
 	sheet := func(name string, takes map[capability.Kind]int) capability.Sheet {
-		return capability.Sheet{Name: name, Backend: "interior", Version: version, Takes: takes, Returns: capability.LiftsAll, Accuracy: 1e-9, Toll: toll}
+		return capability.Sheet{Name: name, Backend: "interior", Version: version, Takes: takes, Returns: capability.LiftsAll, Accuracy: 1e-8, Toll: toll}
 	}
 	return []capability.Sheet{sheet(ComplexSheet, all), sheet(RealSheet, realOnly)}
 }

@@ -89,6 +89,15 @@ type residuals struct {
 	cx, by float64     // primal and dual objective, times tau
 }
 
+// size measures the residuals as a whole.
+func (r *residuals) size() float64 {
+	n := math.Hypot(norm(r.x), r.gap)
+	for _, t := range r.item {
+		n = math.Hypot(n, norm(t))
+	}
+	return n
+}
+
 func (f *form) residuals(s *state) *residuals {
 	n := f.rows
 	r := &residuals{rays: make([]float64, n+f.free)}

@@ -93,24 +93,11 @@ func solveRelaxation(t *testing.T, b *broker, n *grid.Network, r grid.Relaxation
 	}
 	t.Logf("%v: %s %.10g by %s in %s, %d iterations, %s", r, outcomeWord(a.GetOutcome()), a.GetObjective(), a.GetRoute().GetSheet(),
 		durationText(a.GetTimings().GetSolved()), a.GetIterations(), verdictWord(a.GetExamination().GetVerdict()))
-	short := verdictWord(a.GetExamination().GetVerdict()) == "checked" && a.GetOutcome() == towpathv1.Outcome_OUTCOME_INACCURATE
-	if !holds(a) && !(short && fallsShort(n.Name, r)) {
+	if !holds(a) {
 		t.Errorf("%v: %s, %s %v", r, outcomeWord(a.GetOutcome()), verdictWord(a.GetExamination().GetVerdict()), a.GetExamination().GetReasons())
 	}
 	if want != nil && math.Abs(a.GetObjective()-*want) > boundTolerance**want {
 		t.Errorf("%v: bound %.10g, recomputed elsewhere %.10g", r, a.GetObjective(), *want)
 	}
 	return a.GetObjective()
-}
-
-// fallsShort lists the relaxations on which the interior-point engine does not reach the tolerance that it sets itself,
-// although what it reaches passes the examination: a weakness of the engine, to be mended there and struck off here.
-func fallsShort(network string, r grid.Relaxation) bool {
-	switch network {
-	case "case3_lmbd":
-		return true
-	case "case3_lmbd__sad":
-		return r == grid.Semidefinite
-	}
-	return false
 }
