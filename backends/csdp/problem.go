@@ -35,6 +35,11 @@ type entry struct {
 // largest is the largest number that csdp is given: it takes 3e308 for infinity and calls the problem infeasible.
 const largest = 1e100
 
+// noise is the largest constant of a row without coefficients, and the largest cost of a column in no constraint, that is
+// taken for zero: arithmetic on numbers of order one leaves that much. Leaving such a row out misses it by no more, while
+// a certificate of its contradiction would be of size 1/noise, which proves nothing.
+const noise = 1e-12
+
 // fromEquality writes min c.x, A x = b, x in cones: C = -c, a = b, and csdp's y is minus ours. A coefficient on an
 // off-diagonal entry is halved, because tr(A X) counts it twice.
 func fromEquality(m *model.Model) (*problem, error) {
@@ -68,22 +73,25 @@ func fromEquality(m *model.Model) (*problem, error) {
 		c := &m.Constraints[k]
 		for r := range c.Map.Rows() {
 			b := -real(c.Map.ConstAt(r))
-			if c.Map.Lin.Start[r] == c.Map.Lin.Start[r+1] { // csdp refuses empty rows
-				p.where = append(p.where, -1)
-				if b != 0 && p.settled == nil {
-					p.settled = p.contradiction(len(p.where)-1, b)
-				}
-				continue
-			}
-			if !(math.Abs(b) <= largest) {
-				return nil, tooLarge(b)
-			}
-			p.a = append(p.a, b)
-			p.where = append(p.where, len(p.a)-1)
+			empty := true // csdp refuses empty rows, and rows of zeros are empty to it
 			for x := c.Map.Lin.Start[r]; x < c.Map.Lin.Start[r+1]; x++ {
-				if err := put(len(p.a), c.Map.Lin.Col[x], real(c.Map.Lin.At(x))); err != nil {
+				v := real(c.Map.Lin.At(x))
+				empty = empty && v == 0
+				if err := put(len(p.a)+1, c.Map.Lin.Col[x], v); err != nil {
 					return nil, err
 				}
+			}
+			switch {
+			case math.IsNaN(b - b), !empty && math.Abs(b) > largest:
+				return nil, tooLarge(b)
+			case empty:
+				p.where = append(p.where, -1)
+				if math.Abs(b) > noise && p.settled == nil {
+					p.settled = p.contradiction(len(p.where)-1, b)
+				}
+			default:
+				p.a = append(p.a, b)
+				p.where = append(p.where, len(p.a)-1)
 			}
 		}
 	}
@@ -100,23 +108,24 @@ func fromInequality(m *model.Model) (*problem, error) {
 	}
 	used := make([]bool, n)
 	for k := range m.Constraints {
-		for _, col := range m.Constraints[k].Map.Lin.Col {
-			used[col] = true
+		lin := &m.Constraints[k].Map.Lin
+		for x, col := range lin.Col {
+			used[col] = used[col] || real(lin.At(x)) != 0
 		}
 	}
 	for col := range n {
-		if !used[col] { // csdp refuses empty rows
+		switch c := cost[col]; {
+		case math.IsNaN(c - c), used[col] && math.Abs(c) > largest:
+			return nil, tooLarge(c)
+		case !used[col]: // csdp refuses empty rows, and rows of zeros are empty to it
 			p.where = append(p.where, -1)
-			if cost[col] != 0 && p.settled == nil {
-				p.settled = p.slide(col, cost[col])
+			if math.Abs(c) > noise && p.settled == nil {
+				p.settled = p.slide(col, c)
 			}
-			continue
+		default:
+			p.a = append(p.a, c)
+			p.where = append(p.where, len(p.a)-1)
 		}
-		if !(math.Abs(cost[col]) <= largest) {
-			return nil, tooLarge(cost[col])
-		}
-		p.a = append(p.a, cost[col])
-		p.where = append(p.where, len(p.a)-1)
 	}
 	for k := range m.Constraints {
 		c := &m.Constraints[k]

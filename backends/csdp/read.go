@@ -1,8 +1,7 @@
 package csdp
 
 import (
-	"bufio"
-	"bytes"
+	"errors"
 	"fmt"
 	"math"
 	"regexp"
@@ -30,7 +29,10 @@ func (p *problem) read(r *child.Result) (*model.Answer, error) {
 	if r.Code < solved || r.Code > lastStuck || !there {
 		return nil, fmt.Errorf("csdp ended with code %d and no solution: %s", r.Code, tail(r.Output))
 	}
-	y, x, err := p.parse(file)
+	y, x, whole, err := p.parse(file)
+	if err == nil && !whole && r.Code != xInfeasible { // where there is no X, none is used
+		err = errors.New("it is cut short: the last entry of X is missing")
+	}
 	if err != nil {
 		return nil, fmt.Errorf("csdp's solution file: %w", err)
 	}
@@ -68,75 +70,6 @@ func (p *problem) read(r *child.Result) (*model.Answer, error) {
 		a.Objective, a.Bound = -cx+p.m.Objective.Const, -ay+p.m.Objective.Const
 	}
 	return a, nil
-}
-
-// parse reads y in the first line, then lines "1 block i j value" for Z, which follows from y and is not kept, and
-// "2 block i j value" for X, which comes back packed by block. Everything is checked: the file is not ours.
-func (p *problem) parse(file []byte) (y []float64, x [][]float64, err error) {
-	for _, b := range p.blocks {
-		n := b.size
-		if !b.diagonal {
-			n = model.PackedLen(b.size)
-		}
-		x = append(x, make([]float64, n))
-	}
-	in := bufio.NewScanner(bytes.NewReader(file))
-	in.Buffer(nil, len(file)+1)
-	if !in.Scan() {
-		return nil, nil, fmt.Errorf("it is empty")
-	}
-	for _, w := range strings.Fields(in.Text()) {
-		v, err := number(w)
-		if err != nil {
-			return nil, nil, err
-		}
-		y = append(y, v)
-	}
-	if len(y) != len(p.a) {
-		return nil, nil, fmt.Errorf("it has %d multipliers for %d rows", len(y), len(p.a))
-	}
-	for in.Scan() {
-		f := strings.Fields(in.Text())
-		if len(f) == 0 {
-			continue
-		}
-		if len(f) != 5 {
-			return nil, nil, fmt.Errorf("line %q does not have 5 fields", in.Text())
-		}
-		var n [4]int
-		for i := range n {
-			if n[i], err = strconv.Atoi(f[i]); err != nil {
-				return nil, nil, err
-			}
-		}
-		v, err := number(f[4])
-		if err != nil {
-			return nil, nil, err
-		}
-		which, k, i, j := n[0], n[1]-1, n[2], n[3]
-		if i > j {
-			i, j = j, i
-		}
-		if which < 1 || which > 2 || k < 0 || k >= len(p.blocks) || i < 1 || j > p.blocks[k].size || p.blocks[k].diagonal && i != j {
-			return nil, nil, fmt.Errorf("line %q names no entry", in.Text())
-		}
-		at := i - 1
-		if !p.blocks[k].diagonal {
-			at = model.PackedIndex(p.blocks[k].size, j-1, i-1)
-		}
-		if which == 2 {
-			x[k][at] = v
-		}
-	}
-	return y, x, in.Err()
-}
-
-func number(w string) (float64, error) {
-	v, err := strconv.ParseFloat(w, 64)
-	if err == nil && math.IsNaN(v-v) {
-		err = fmt.Errorf("%q is not finite", w)
-	}
-	return v, err
 }
 
 // trace is tr(C X).
@@ -223,7 +156,7 @@ func status(output string) string {
 	for _, l := range strings.Split(output, "\n") {
 		for _, start := range []string{"Success:", "Partial Success:", "Failure:", "Stuck", "Lack of progress", "Maximum iterations"} {
 			if strings.HasPrefix(l, start) {
-				return strings.TrimSpace(l)
+				return strings.TrimSpace(strings.ToValidUTF8(l, "?"))
 			}
 		}
 	}
@@ -232,9 +165,9 @@ func status(output string) string {
 
 func tail(s string) string {
 	const most = 300
-	s = strings.TrimSpace(s)
+	s = strings.TrimSpace(strings.ToValidUTF8(s, "?")) // it goes into messages that must be text
 	if len(s) > most {
-		s = "..." + s[len(s)-most:]
+		s = "..." + strings.ToValidUTF8(s[len(s)-most:], "")
 	}
 	return s
 }

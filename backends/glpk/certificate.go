@@ -34,15 +34,22 @@ func (p *program) elastic() *program {
 	return &e
 }
 
-// farkas takes the certificate from a solution of the elastic program, at value 1.
-func (p *program) farkas(s *solution, a *model.Answer) {
+// farkas takes the certificate from a solution of the elastic program, at value 1, and returns its error: the reduced costs
+// that push against a limit that is not there. +Inf means that there is no certificate.
+func (p *program) farkas(s *solution, a *model.Answer) (off float64) {
 	columns := s.columnDuals[:len(p.cost)]
 	value := pushes(s.rowDuals, p.rowLower, p.rowUpper) + pushes(columns, p.lower, p.upper)
 	if !(value > 0) || math.IsInf(value, 0) {
-		return
+		return math.Inf(1)
+	}
+	for k, d := range columns {
+		if d > 0 && math.IsInf(p.lower[k], -1) || d < 0 && math.IsInf(p.upper[k], 1) {
+			off = max(off, math.Abs(d)/value)
+		}
 	}
 	a.Outcome = model.Infeasible
 	a.Farkas = p.multipliers(scaled(s.rowDuals, 1/value), scaled(columns, 1/value))
+	return off
 }
 
 // recession is the program of rays: the homogeneous rows and bounds, and the cost of the ray no less than -1. Zero is
@@ -79,17 +86,19 @@ func receding(lower, upper []float64) (lo, up []float64) {
 	return lo, up
 }
 
-// ray takes the certificate from a solution of the recession program, at cost -1.
-func (p *program) ray(s *solution, a *model.Answer) {
+// ray takes the certificate from a solution of the recession program, at cost -1. Columns are values, not duals, and need no
+// more digits: the error is 0, or +Inf when there is no ray.
+func (p *program) ray(s *solution, a *model.Answer) (off float64) {
 	cost := 0.0
 	for j, c := range p.cost {
 		cost += c * s.columns[j]
 	}
 	if !(cost < -0.5) { // -1 but for rounding, or 0 when there is no ray
-		return
+		return math.Inf(1)
 	}
 	a.Outcome = model.Unbounded
 	a.Ray = p.point(scaled(s.columns, -1/cost))
+	return 0
 }
 
 func scaled(v []float64, by float64) []float64 {
