@@ -21,6 +21,8 @@ type kkt struct {
 	l []float64
 	d []float64
 	e []float64 // equilibration: the system is E K E
+
+	patterns map[*item]*pattern // of psd items, once they are known
 	regularity
 }
 
@@ -40,7 +42,7 @@ var firmness = []regularity{{1e-8, 1e-9, 1e-5}, {1e-10, 1e-11, 1e-6}, {1e-13, 1e
 
 func newKKT(f *form) *kkt {
 	n := f.rows + f.free
-	return &kkt{f: f, n: n, k: make([]float64, n*n), l: make([]float64, n*n), d: make([]float64, n), e: make([]float64, n), regularity: firmness[0]}
+	return &kkt{f: f, n: n, k: make([]float64, n*n), l: make([]float64, n*n), d: make([]float64, n), e: make([]float64, n), patterns: map[*item]*pattern{}, regularity: firmness[0]}
 }
 
 // build forms the matrix at the present scalings and factors it; ok is false when it holds NaN.
@@ -107,6 +109,10 @@ func (s *kkt) gram(it *item) {
 	}
 	if o, ok := it.cone.(*orthant); ok {
 		s.gramOrthant(it, o, sign)
+		return
+	}
+	if c, ok := it.cone.(*psd); ok {
+		s.gramPSD(it, c, sign)
 		return
 	}
 	h, x := make([]float64, it.dim()), make([]float64, it.dim())
