@@ -193,7 +193,7 @@ func (p *problem) text() []byte {
 	}
 	w.WriteByte('\n')
 	for _, v := range p.a {
-		w.WriteString(strconv.FormatFloat(v, 'g', 16, 64))
+		w.WriteString(strconv.FormatFloat(v, 'g', 17, 64))
 		w.WriteByte(' ')
 	}
 	w.WriteByte('\n')
@@ -203,7 +203,7 @@ func (p *problem) text() []byte {
 		for _, e := range b.entries {
 			l := &lines[e.of]
 			fmt.Fprintf(l, "%d %d %d %d ", e.of, k+1, e.i, e.j)
-			l.WriteString(strconv.FormatFloat(e.v, 'g', 16, 64))
+			l.WriteString(strconv.FormatFloat(e.v, 'g', 17, 64))
 			l.WriteByte('\n')
 		}
 	}
