@@ -9,6 +9,7 @@ import (
 	"towpath/backends/interior"
 	"towpath/bridges"
 	"towpath/capability"
+	"towpath/model"
 	"towpath/model/modeltest"
 	towpathv1 "towpath/proto/towpath/v1"
 
@@ -35,6 +36,10 @@ func FuzzModel(f *testing.F) {
 	}
 	for n := 1; n < 4; n++ {
 		add(ModelToProto(sample(rand.New(rand.NewPCG(2, uint64(n))), n)))
+	}
+	for seed := range uint64(20) {
+		m, _ := modeltest.Recipe{Seed: seed, Outcome: model.Optimal}.Make()
+		add(ModelToProto(m))
 	}
 	add(small())
 	var rules []capability.Rule
@@ -67,6 +72,19 @@ func FuzzModel(f *testing.F) {
 		for _, proposal := range capability.Plan(demands, rules, sheets, capability.Options{}) {
 			if proposal.Route == nil && len(proposal.Unreachable.Reasons) == 0 {
 				t.Errorf("%s is out of reach for no reason", proposal.Sheet.Name)
+			}
+			if proposal.Route == nil || proposal.Route.Toll.Bytes > 1<<24 {
+				continue
+			}
+			x, err := bridges.Cross(m, proposal.Route, bridges.All())
+			if err == nil {
+				err = x.Lowered.Validate()
+			}
+			if err == nil {
+				err = proposal.Sheet.Accepts(x.Lowered)
+			}
+			if err != nil {
+				t.Errorf("a route was planned but not crossed: %v", err)
 			}
 		}
 		if m.Starts()[len(m.Blocks)] > 1000 {
