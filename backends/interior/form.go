@@ -56,7 +56,7 @@ func compile(m *model.Model) *form {
 }
 
 func (f *form) addItem(c cone, isBlock bool) int {
-	f.items = append(f.items, &item{cone: c, isBlock: isBlock, data: map[int]*sparse{}, offset: make([]float64, c.dim())})
+	f.items = append(f.items, &item{cone: c, isBlock: isBlock, given: map[int]*sparse{}, offset: make([]float64, c.dim())})
 	return len(f.items) - 1
 }
 
@@ -221,8 +221,8 @@ func (f *form) scaleRows() {
 	each := func(do func(row int, s *sparse)) {
 		for _, it := range f.items {
 			if it.isBlock {
-				for row, s := range it.data {
-					do(row, s)
+				for i, row := range it.keys {
+					do(row, &it.data[i])
 				}
 			}
 		}

@@ -33,9 +33,14 @@ func newPattern(it *item, c *psd) *pattern {
 			}
 		}
 	}
-	p := &pattern{keys: slices.Clone(it.keys)}
-	slices.SortStableFunc(p.keys, func(a, b int) int { return len(it.data[b].at) - len(it.data[a].at) })
-	for _, k := range p.keys {
+	p := &pattern{}
+	order := make([]int, len(it.keys))
+	for k := range order {
+		order[k] = k
+	}
+	slices.SortStableFunc(order, func(a, b int) int { return len(it.data[b].at) - len(it.data[a].at) })
+	for _, k := range order {
+		p.keys = append(p.keys, it.keys[k])
 		var m []triplet
 		used := make([]bool, c.n)
 		for s, at := range it.data[k].at { // real and imaginary part of an entry follow each other

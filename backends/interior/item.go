@@ -1,13 +1,17 @@
 package interior
 
-import "slices"
+import (
+	"maps"
+	"slices"
+)
 
 // item is one cone of the standard form with its data by reduced unknown: rows of A for a block, columns of F for a map.
 type item struct {
 	cone
 	isBlock bool
-	data    map[int]*sparse
-	keys    []int     // of data, rising
+	given   map[int]*sparse // while the form is built
+	keys    []int           // reduced unknowns that meet the cone, rising
+	data    []sparse        // of each key
 	offset  []float64 // c_X of a block, f of a map
 }
 
@@ -58,39 +62,39 @@ func (s *sparse) addTo(x []float64, f float64) {
 }
 
 func (it *item) put(key, at int, v float64) {
-	if it.data[key] == nil {
-		it.data[key] = &sparse{}
+	if it.given[key] == nil {
+		it.given[key] = &sparse{}
 	}
-	it.data[key].put(at, v)
+	it.given[key].put(at, v)
 }
 
 // finish numbers free columns behind the rows.
 func (it *item) finish(rows int) {
-	data := make(map[int]*sparse, len(it.data))
-	for k, s := range it.data {
+	place := func(k int) int {
 		if k < 0 {
-			k = rows - 1 - k
+			return rows - 1 - k
 		}
-		c := s.compact()
-		data[k] = &c
-		it.keys = append(it.keys, k)
+		return k
 	}
-	slices.Sort(it.keys)
-	it.data = data
+	given := slices.SortedFunc(maps.Keys(it.given), func(a, b int) int { return place(a) - place(b) })
+	for _, k := range given {
+		it.keys, it.data = append(it.keys, place(k)), append(it.data, it.given[k].compact())
+	}
+	it.given = nil
 }
 
 // forward adds f D x for reduced unknowns x: A' y for a block, F u for a map.
 func (it *item) forward(dst, x []float64, f float64) {
-	for _, k := range it.keys {
+	for i, k := range it.keys {
 		if x[k] != 0 {
-			it.data[k].addTo(dst, f*x[k])
+			it.data[i].addTo(dst, f*x[k])
 		}
 	}
 }
 
 // back adds f D' v to the reduced unknowns.
 func (it *item) back(dst, v []float64, f float64) {
-	for _, k := range it.keys {
-		dst[k] += f * it.data[k].dot(v)
+	for i, k := range it.keys {
+		dst[k] += f * it.data[i].dot(v)
 	}
 }

@@ -118,10 +118,10 @@ func (s *kkt) gram(it *item) {
 	h, x := make([]float64, it.dim()), make([]float64, it.dim())
 	for i, k := range it.keys {
 		clear(x)
-		it.data[k].addTo(x, 1)
+		it.data[i].addTo(x, 1)
 		it.apply(h, x, !it.isBlock)
-		for _, j := range it.keys[:i+1] {
-			s.k[k*s.n+j] += sign * it.data[j].dot(h)
+		for j, l := range it.keys[:i+1] {
+			s.k[k*s.n+l] += sign * it.data[j].dot(h)
 		}
 	}
 }
@@ -133,10 +133,10 @@ func (s *kkt) gramOrthant(it *item, o *orthant, sign float64) {
 		v   float64
 	}
 	lists := make([][]coefficient, o.n)
-	for _, k := range it.keys {
-		d := it.data[k]
-		for i, a := range d.at {
-			lists[a] = append(lists[a], coefficient{k, d.v[i]})
+	for i, k := range it.keys {
+		d := &it.data[i]
+		for j, a := range d.at {
+			lists[a] = append(lists[a], coefficient{k, d.v[j]})
 		}
 	}
 	for a, list := range lists {
