@@ -12,7 +12,7 @@ type item struct {
 	given   map[int]*sparse // while the form is built
 	keys    []int           // reduced unknowns that meet the cone, rising
 	data    []sparse        // of each key
-	offset  []float64 // c_X of a block, f of a map
+	offset  []float64       // c_X of a block, f of a map
 }
 
 // sparse is a sparse vector.
