@@ -108,7 +108,7 @@ func (d *Driver) Solve(ctx context.Context, sheet string, m *model.Model, o back
 	}
 	c := child.Command{
 		Path: d.path, Args: []string{"in.dat-s", "out"}, Read: []string{"out"}, MaxMemory: o.MaxMemory,
-		Files: map[string][]byte{"in.dat-s": p.text(), "param.csdp": parameters(o)},
+		Files: map[string][]byte{"in.dat-s": p.text(), "param.csdp": parameters(o, p)},
 	}
 	if o.Progress != nil {
 		c.Line = progress(o.Progress, sheet == InequalitySheet, m.Objective.Const)
@@ -131,8 +131,17 @@ func stopped(note string) *model.Answer {
 // broker/endtoend (1e-7 and 1e-8 with, 1e-8 and 1e-9 without), this one with perturbobj=1 left the fewest unchecked.
 const defaultTolerance = 1e-8
 
+// A certificate of csdp shows that every point is at least pinftol (dinftol) long. Its own setting, 1e8, lets it call
+// min x, x >= 1e9 infeasible: the certificate 1e-9 misses by 1e-9. So the length asked for is at least beyond times the
+// largest constant (cost) of the model. It is not more where shortest is enough, because csdp finds fewer certificates the
+// longer it is.
+const (
+	shortest = 1e8
+	beyond   = 1e3
+)
+
 // parameters writes param.csdp. perturbobj=1, csdp's default, helps where lowering left no interior.
-func parameters(o backends.Options) []byte {
+func parameters(o backends.Options, p *problem) []byte {
 	t, limit := o.Tolerance, o.MaxIterations
 	if t == 0 {
 		t = defaultTolerance
@@ -140,7 +149,18 @@ func parameters(o backends.Options) []byte {
 	if limit == 0 {
 		limit = 100
 	}
-	return fmt.Appendf(nil, "axtol=%g\natytol=%g\nobjtol=%g\npinftol=1e8\ndinftol=1e8\nmaxiter=%d\nminstepfrac=0.90\nmaxstepfrac=0.97\nminstepp=1e-8\nminstepd=1e-8\nusexzgap=1\ntweakgap=0\naffine=0\nprintlevel=1\nperturbobj=1\nfastmode=0\n", t, t, t, limit)
+	left, right := shortest, shortest
+	for _, v := range p.a {
+		left = max(left, beyond*math.Abs(v))
+	}
+	for _, b := range p.blocks {
+		for _, e := range b.entries {
+			if e.of == 0 {
+				right = max(right, beyond*math.Abs(e.v))
+			}
+		}
+	}
+	return fmt.Appendf(nil, "axtol=%g\natytol=%g\nobjtol=%g\npinftol=%g\ndinftol=%g\nmaxiter=%d\nminstepfrac=0.90\nmaxstepfrac=0.97\nminstepp=1e-8\nminstepd=1e-8\nusexzgap=1\ntweakgap=0\naffine=0\nprintlevel=1\nperturbobj=1\nfastmode=0\n", t, t, t, left, right, limit)
 }
 
 // progress reads csdp's lines "Iter: 3 Ap: 1.00e+00 Pobj: 1.5e+01 Ad: 9.0e-01 Dobj: 1.6e+01".
