@@ -3,17 +3,23 @@ package bridgetest
 import (
 	"fmt"
 
-	"towpath/backends/interior"
 	"towpath/bridges"
 	"towpath/capability"
 	"towpath/model"
 )
 
 // Subject is a bridge under test. LowersAs and LiftsAs, where set, stand in for it on the way there and on the way back:
-// a bridge with a mistake in one direction.
+// a bridge with a mistake in one direction. Without an engine the law of execution is left out.
 type Subject struct {
 	bridges.Bridge
 	LowersAs, LiftsAs bridges.Bridge
+	Engine            *Engine
+}
+
+// Engine solves what its sheet takes. Back ends are a layer above, so that their tests bring one along.
+type Engine struct {
+	Sheet capability.Sheet
+	Solve func(*model.Model) (*model.Answer, error)
 }
 
 // crossing is a model on the far side.
@@ -78,10 +84,10 @@ func (s *Subject) single(m *model.Model) (route *capability.Route, ok bool) {
 	return route, ok
 }
 
-// forced is the route to the complex engine that has to take the subject: the engine's sheet without the subject's kind,
+// forced is the route to the engine that has to take the subject: the engine's sheet without the subject's kind,
 // and no other bridge from that kind.
 func (s *Subject) forced(m *model.Model) (route *capability.Route, ok bool) {
-	sheet := interior.New().Sheets()[0]
+	sheet := s.Engine.Sheet
 	takes := map[capability.Kind]int{}
 	for k, limit := range sheet.Takes {
 		if k != s.From() {

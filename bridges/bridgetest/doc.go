@@ -8,6 +8,6 @@
 //	substitution  at any point of the lowered model, the objective and what was not lowered are as at the lifted point
 //	adjoint       any multipliers of the images pair with them as the lifted multiplier does with the original
 //	membership    where no block is new, the images hold at a point just when the original does
-//	execution     solved on the far side and lifted, models with known answers give those, multipliers and certificates
+//	execution     with an engine at hand: solved on the far side and lifted, models with known answers give those, multipliers and certificates
 //	              included, and the examiner passes them
 package bridgetest

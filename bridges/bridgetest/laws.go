@@ -21,14 +21,14 @@ const (
 	rounding = 1e-10 // of sums of a few dozen numbers of size one
 )
 
-// Run holds every bridge of a catalogue to the laws.
-func Run(t *testing.T, catalogue []bridges.Bridge) {
+// Run holds every bridge of a catalogue to the laws. Without an engine the law of execution is left out.
+func Run(t *testing.T, catalogue []bridges.Bridge, engine *Engine) {
 	for _, b := range catalogue {
 		t.Run(b.ID(), func(t *testing.T) {
 			if b.Source() == "" {
 				t.Error("it has no source")
 			}
-			for _, err := range Broken(Subject{Bridge: b}) {
+			for _, err := range Broken(Subject{Bridge: b, Engine: engine}) {
 				t.Error(err)
 			}
 		})

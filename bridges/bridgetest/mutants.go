@@ -1,7 +1,6 @@
 package bridgetest
 
 import (
-	"fmt"
 	"reflect"
 	"slices"
 	"testing"
@@ -68,9 +67,9 @@ var equivalent = map[string]string{
 	"lorentz-block/open-out, negated in one place": "the cone is symmetric in the sign of its tail",
 }
 
-// TestMutantsAreCaught makes each mistake in each bridge where it changes anything: on the way there only and on the way
+// TryMutants makes each mistake in each bridge where it changes anything: on the way there only and on the way
 // back only, where it must break a law; and in both, where some mistakes are no more than another correct formula.
-func TestMutantsAreCaught(t *testing.T) {
+func TryMutants(t *testing.T, engine *Engine) {
 	made, harmless := 0, 0
 	for _, b := range bridges.All() {
 		t.Run(b.ID(), func(t *testing.T) {
@@ -80,8 +79,8 @@ func TestMutantsAreCaught(t *testing.T) {
 					continue
 				}
 				for name, s := range map[string]Subject{
-					"there": {Bridge: b, LowersAs: m},
-					"back":  {Bridge: b, LiftsAs: m},
+					"there": {Bridge: b, LowersAs: m, Engine: engine},
+					"back":  {Bridge: b, LiftsAs: m, Engine: engine},
 				} {
 					made++
 					if name == "back" && !backMatters(b, m) {
@@ -94,7 +93,7 @@ func TestMutantsAreCaught(t *testing.T) {
 					}
 				}
 				made++
-				if len(Broken(Subject{Bridge: b, LowersAs: m, LiftsAs: m})) == 0 {
+				if len(Broken(Subject{Bridge: b, LowersAs: m, LiftsAs: m, Engine: engine})) == 0 {
 					harmless++
 					t.Logf("%s both ways breaks no law", mistake.name)
 				}
@@ -233,53 +232,3 @@ func lastCoefficient(l *bridges.Lowering, change func(complex128) complex128) {
 }
 
 func conj(z complex128) complex128 { return complex(real(z), -imag(z)) }
-
-// The published warning of an embedding with equal signs off the diagonal, [[A, B], [B, A]]: it is invisible to
-// objectives. H = [[2, 1-i], [1+i, 3]] has eigenvalues 1 and 4, and must go over to a symmetric matrix with 1, 1, 4, 4.
-func TestHermitianEmbeddingKeepsEigenvalues(t *testing.T) {
-	for _, b := range bridges.All() {
-		if b.ID() != "hermitian-psd-map/real-2n" {
-			continue
-		}
-		h := []complex128{2, 1 + 1i, 3}
-		low := b.Lower(bridges.Item{Kind: b.From(), Rows: 3, Cone: model.Cone{Kind: model.PSD}})
-		im := low.Constraints[0]
-		s := make([][]float64, 4)
-		for i := range s {
-			s[i] = make([]float64, 4)
-		}
-		for r := range im.Rows {
-			i, j := model.PackedAt(4, r)
-			for p := im.Of.Lin.Start[r]; p < im.Of.Lin.Start[r+1]; p++ {
-				s[i][j] += real(im.Of.Lin.At(p) * h[im.Of.Lin.Col[p]])
-			}
-			s[j][i] = s[i][j]
-		}
-		// (S - I)(S - 4I) = 0 says that there are no other eigenvalues, the trace 10 that each comes twice.
-		trace := 0.0
-		for i := range s {
-			trace += s[i][i]
-			for j := range s {
-				sum := 0.0
-				for k := range s {
-					sum += (s[i][k] - unit(i, k)) * (s[k][j] - 4*unit(k, j))
-				}
-				if sum != 0 {
-					t.Errorf("(S - I)(S - 4I) has %g in row %d, column %d; S = %v", sum, i, j, s)
-				}
-			}
-		}
-		if trace != 10 {
-			t.Errorf("trace %g", trace)
-		}
-		return
-	}
-	t.Fatal(fmt.Errorf("the bridge is gone"))
-}
-
-func unit(i, j int) float64 {
-	if i == j {
-		return 1
-	}
-	return 0
-}
