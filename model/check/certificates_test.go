@@ -123,6 +123,35 @@ func TestWeakInfeasibilityIsNotInfeasibility(t *testing.T) {
 	}
 }
 
+// Small numbers do not make a certificate: x - 1e7 >= 0, 1e-9 x - 1 >= 0 and the like have solutions, alone and beside a
+// contradiction of which the certificate makes no use; maximizing x under 1e-7 x <= 1 has an optimum.
+func TestSmallNumbersAreNoCertificate(t *testing.T) {
+	row := func(coef, constant float64) model.Constraint {
+		return model.Constraint{Cone: model.Cone{Kind: model.Nonneg}, Map: model.Map{
+			Lin: model.Matrix{Start: []int{0, 1}, Col: []uint32{0}, Re: []float64{coef}}, Const: []complex128{complex(constant, 0)}}}
+	}
+	nan := math.NaN()
+	one := []model.Block{{Field: model.Real, Rows: 1, Cols: 1}}
+	for _, c := range []struct{ coef, constant, y float64 }{{1, -1e7, 1e-7}, {1e-9, -1, 1}, {1e-12, -1e-3, 1e3}} {
+		m := &model.Model{Blocks: one, Constraints: []model.Constraint{row(c.coef, c.constant)}}
+		y := &model.Multipliers{Constraints: [][]complex128{{complex(c.y, 0)}}}
+		if r := check.Examine(m, &model.Answer{Outcome: model.Infeasible, Objective: nan, Bound: nan, Farkas: y}, check.Tolerances{}); r.Verdict == check.Checked {
+			t.Errorf("%g x + %g >= 0, multiplier %g: %s", c.coef, c.constant, c.y, r)
+		}
+		// beside two rows that cancel and prove nothing
+		m = &model.Model{Blocks: []model.Block{{Field: model.Real, Rows: 1, Cols: 1}, {Field: model.Real, Rows: 1, Cols: 1}}, Constraints: []model.Constraint{row(c.coef, c.constant), row(1, 0), row(-1, 0)}}
+		m.Constraints[1].Map.Lin.Col[0], m.Constraints[2].Map.Lin.Col[0] = 1, 1
+		y = &model.Multipliers{Constraints: [][]complex128{{complex(c.y, 0)}, {1}, {1}}}
+		if r := check.Examine(m, &model.Answer{Outcome: model.Infeasible, Objective: nan, Bound: nan, Farkas: y}, check.Tolerances{}); r.Verdict == check.Checked {
+			t.Errorf("%g x + %g >= 0, multiplier %g, in company: %s", c.coef, c.constant, c.y, r)
+		}
+	}
+	m := &model.Model{Blocks: one, Objective: model.Objective{Sense: model.Maximize, Col: []uint32{0}, Coef: []complex128{1}}, Constraints: []model.Constraint{row(-1e-7, 1)}}
+	if r := check.Examine(m, &model.Answer{Outcome: model.Unbounded, Objective: nan, Bound: nan, Ray: &model.Point{Values: [][]complex128{{1}}}}, check.Tolerances{}); r.Verdict == check.Checked {
+		t.Errorf("1e-7 x <= 1 bounds x: %s", r)
+	}
+}
+
 // A claim without its certificate is no claim, and a certificate that proves nothing is refuted.
 func TestClaimsNeedCertificates(t *testing.T) {
 	m, _ := modeltest.Recipe{Seed: 1, Outcome: model.Optimal}.Make()

@@ -21,6 +21,8 @@
 // A certificate of infeasibility is scaled to value 1. If its residual (stationarity and dual cones) is r, no feasible
 // point is smaller than about 1/r: an exact certificate has r = 0. A weakly infeasible model has no certificate, but
 // things that look like one, with residuals as small as you please, bought by growth: their size times their residual
-// stays of order one. A certificate passes when its residual is within tolerance and that product is small.
+// stays of order one. A certificate passes when its residual is within tolerance, that product is small, and every
+// residual is small against the terms that it is left of: sums must cancel, not only be small, as those of a model written
+// in small numbers are. Numbers that are next to nothing beside the certificate's largest may be left out for that.
 // Rays of unboundedness are judged likewise.
 package check

@@ -2,6 +2,7 @@ package check
 
 import (
 	"math"
+	"slices"
 
 	"towpath/model"
 )
@@ -77,7 +78,8 @@ func (e *examiner) primal(a *model.Answer) [][]complex128 {
 	values := make([][]complex128, len(e.m.Constraints))
 	for k := range e.m.Constraints {
 		c, res := &e.m.Constraints[k], &e.r.Constraints[k]
-		v, scale := rows(c, x, false)
+		v, terms := rows(c, x, false)
+		scale := slices.Max(terms)
 		values[k] = v
 		if c.Cone.Kind == model.Range {
 			res.Distance = fromLimits(v, c.Cone.Lower, c.Cone.Upper, c.RealRow)
@@ -144,7 +146,7 @@ func (e *examiner) dual(a *model.Answer) {
 		e.strayed = max(e.strayed, far)
 		e.dualFeasible(far/(1+norm(v, c.Weight)), "%s: relative distance of its multiplier from the dual cone", constraintTitle(e.m, k))
 	}
-	left, scales := reduced(e.m, y, true)
+	left, terms := reduced(e.m, y, true)
 	for b := range e.m.Blocks {
 		blk := &e.m.Blocks[b]
 		far, _ := distance(blk.Cone, blk.Field, left[b], true)
@@ -153,7 +155,7 @@ func (e *examiner) dual(a *model.Answer) {
 		}
 		e.r.Blocks[b].Stationarity = far
 		e.strayed = max(e.strayed, far)
-		e.dualFeasible(far/(1+scales[b]), "%s: relative distance of its reduced cost from the dual cone", blockTitle(e.m, b))
+		e.dualFeasible(far/(1+slices.Max(terms[b])), "%s: relative distance of its reduced cost from the dual cone", blockTitle(e.m, b))
 		e.price += far * norm(a.Point.Values[b], blk.Weight)
 	}
 	cost := 1.0 // what multipliers answer to

@@ -52,6 +52,9 @@ const (
 	growthProduct = 1e-2
 	// certificateProduct bounds residual times size of a certificate of value 1 (see the package comment).
 	certificateProduct = 1e-4
+	// uncancelled bounds the residuals of a certificate relative to the terms they are left of. A residual that is not small
+	// against its terms is small only because the model is written in small numbers: 1e-9 x >= 1 has solutions.
+	uncancelled = 1e-3
 	// certificateSize bounds the size of a certificate of value 1: beyond it rounding of the data alone could undo it.
 	certificateSize = 1e10
 )

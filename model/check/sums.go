@@ -33,10 +33,13 @@ func (t *tally) add(z complex128) {
 	t.terms = math.Hypot(t.terms, size(z))
 }
 
-// rows evaluates a constraint at the entries x, or only its linear part, and returns the size of the largest row's terms.
-func rows(c *model.Constraint, x []complex128, linear bool) (out []complex128, scale float64) {
+// weigh counts a term of the given size.
+func (t *tally) weigh(size float64) { t.terms = math.Hypot(t.terms, size) }
+
+// rows evaluates a constraint at the entries x, or only its linear part, and returns the size of every row's terms.
+func rows(c *model.Constraint, x []complex128, linear bool) (out []complex128, terms []float64) {
 	f := &c.Map
-	out = make([]complex128, f.Rows())
+	out, terms = make([]complex128, f.Rows()), make([]float64, f.Rows())
 	for r := range out {
 		var t tally
 		for p := f.Lin.Start[r]; p < f.Lin.Start[r+1]; p++ {
@@ -54,9 +57,9 @@ func rows(c *model.Constraint, x []complex128, linear bool) (out []complex128, s
 		if !c.RealRow(r) {
 			out[r] += complex(0, t.im.value())
 		}
-		scale = max(scale, t.terms)
+		terms[r] = t.terms
 	}
-	return out, scale
+	return out, terms
 }
 
 // entries lists the entries of a point in one slice.
@@ -79,11 +82,11 @@ func objective(m *model.Model, x []complex128) float64 {
 	return s.value()
 }
 
-// reduced returns, for every block and in its inner product, c - F^* y - z (c only with cost), and the size of the
-// largest entry's terms. With <a,b> = Re(conj(a) b):
+// reduced returns, for every block and in its inner product, c - F^* y - z (c only with cost), and the size of every
+// entry's terms. With <a,b> = Re(conj(a) b):
 //
 //	<y, l x> = <conj(l) y, x>,  <y, l conj(x)> = <l conj(y), x>,  Re(c x) = <conj(c), x>
-func reduced(m *model.Model, y *model.Multipliers, cost bool) (out [][]complex128, scales []float64) {
+func reduced(m *model.Model, y *model.Multipliers, cost bool) (out [][]complex128, terms [][]float64) {
 	starts := m.Starts()
 	t := make([]tally, starts[len(m.Blocks)])
 	if cost {
@@ -98,25 +101,32 @@ func reduced(m *model.Model, y *model.Multipliers, cost bool) (out [][]complex12
 	for k := range m.Constraints {
 		c := &m.Constraints[k]
 		f := &c.Map
+		// In cones whose rows do not stand for themselves the multiplier as a whole is the measure: where it should be
+		// zero it is so only up to its rounding.
+		whole := 0.0
+		if !cost && !splits(c.Cone.Kind) {
+			whole = norm(y.Constraints[k], c.Weight)
+		}
 		for r := range f.Rows() {
 			v := -y.Constraints[k][r] * complex(c.Weight(r), 0)
-			if v == 0 {
+			if v == 0 && whole == 0 {
 				continue
 			}
 			for p := f.Lin.Start[r]; p < f.Lin.Start[r+1]; p++ {
 				t[f.Lin.Col[p]].add(conj(f.Lin.At(p)) * v)
+				t[f.Lin.Col[p]].weigh(size(f.Lin.At(p)) * whole)
 			}
 			if f.Conj != nil {
 				for p := f.Conj.Start[r]; p < f.Conj.Start[r+1]; p++ {
 					t[f.Conj.Col[p]].add(f.Conj.At(p) * conj(v))
+					t[f.Conj.Col[p]].weigh(size(f.Conj.At(p)) * whole)
 				}
 			}
 		}
 	}
 	for b := range m.Blocks {
 		blk := &m.Blocks[b]
-		v := make([]complex128, blk.Entries())
-		scale := 0.0
+		v, sizes := make([]complex128, blk.Entries()), make([]float64, blk.Entries())
 		for k := range v {
 			at := &t[starts[b]+k]
 			w := blk.Weight(k)
@@ -127,11 +137,11 @@ func reduced(m *model.Model, y *model.Multipliers, cost bool) (out [][]complex12
 			if !blk.RealEntry(k) {
 				v[k] += complex(0, at.im.value()/w)
 			}
-			scale = max(scale, at.terms)
+			sizes[k] = at.terms
 		}
-		out, scales = append(out, v), append(scales, scale)
+		out, terms = append(out, v), append(terms, sizes)
 	}
-	return out, scales
+	return out, terms
 }
 
 // dualObjective is -sum <y, F(0)> + sum over range rows and bounds of (lower y^+ - upper y^-), without the objective's
