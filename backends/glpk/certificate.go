@@ -42,9 +42,18 @@ func (p *program) farkas(s *solution, a *model.Answer) (off float64) {
 	if !(value > 0) || math.IsInf(value, 0) {
 		return math.Inf(1)
 	}
+	terms := make([]float64, len(columns))
+	for r, y := range s.rowDuals {
+		for q := p.start[r]; q < p.start[r+1]; q++ {
+			terms[p.column[q]] += math.Abs(y * p.value[q])
+		}
+	}
 	for k, d := range columns {
 		if d > 0 && math.IsInf(p.lower[k], -1) || d < 0 && math.IsInf(p.upper[k], 1) {
 			off = max(off, math.Abs(d)/value)
+			if share := math.Abs(d) / terms[k]; share > 1e-4 { // nothing cancels: a rounding error of the duals themselves
+				off = max(off, share)
+			}
 		}
 	}
 	a.Outcome = model.Infeasible
