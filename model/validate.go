@@ -48,7 +48,7 @@ func (v *validator) model() {
 	sound, total := true, 0
 	for k := range v.m.Blocks {
 		b := &v.m.Blocks[k]
-		path, place := fmt.Sprintf("blocks[%d]", k), titled("block", k, b.Name)
+		path, place := fmt.Sprintf("blocks[%d]", k), Title("block", k, b.Name)
 		v.unique(path, place, "block", b.Name, k, seen)
 		if !v.block(path, place, b) {
 			sound = false
@@ -70,7 +70,7 @@ func (v *validator) model() {
 	seen = map[string]int{}
 	for k := range v.m.Constraints {
 		c := &v.m.Constraints[k]
-		path, place := fmt.Sprintf("constraints[%d]", k), titled("constraint", k, c.Name)
+		path, place := fmt.Sprintf("constraints[%d]", k), Title("constraint", k, c.Name)
 		v.unique(path, place, "constraint", c.Name, k, seen)
 		v.constraint(path, place, c)
 	}
@@ -180,7 +180,7 @@ func (v *validator) realColumn(col uint32) bool {
 
 func (v *validator) entryName(col uint32) string {
 	b, k := v.find(col)
-	return fmt.Sprintf("entry %d of %s", k, titled("block", b, v.m.Blocks[b].Name))
+	return fmt.Sprintf("entry %d of %s", k, Title("block", b, v.m.Blocks[b].Name))
 }
 
 func isFinite(c complex128) bool {

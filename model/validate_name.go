@@ -9,8 +9,8 @@ import (
 // MaxName is the longest name in bytes.
 const MaxName = 256
 
-// titled names a block or a constraint for people, by its number alone where its name could not be shown.
-func titled(what string, k int, name string) string {
+// Title names a block or a constraint for people, by its number alone where its name could not be shown.
+func Title(what string, k int, name string) string {
 	if problem, _ := wrongName(name); problem != "" || name == "" {
 		return fmt.Sprintf("%s %d", what, k)
 	}

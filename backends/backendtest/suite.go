@@ -35,6 +35,9 @@ func Run(t *testing.T, d backends.Driver, e Expect) {
 	if e.Seeds == 0 {
 		e.Seeds = 40
 	}
+	if testing.Short() {
+		e.Seeds = min(e.Seeds, 10)
+	}
 	sheets := d.Sheets()
 	if len(sheets) == 0 {
 		t.Fatal("the driver has no sheet")

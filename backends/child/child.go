@@ -141,12 +141,17 @@ func limit(pid int, memory int64) {
 	}
 }
 
+// readBounded reads a plain file. The child may have put anything in its place: a link to a file that is not its own, a pipe
+// that nobody writes to.
 func readBounded(path string) ([]byte, error) {
-	f, err := os.Open(path)
+	f, err := os.OpenFile(path, os.O_RDONLY|unix.O_NOFOLLOW|unix.O_NONBLOCK, 0)
 	if err != nil {
 		return nil, err
 	}
 	defer f.Close()
+	if info, err := f.Stat(); err != nil || !info.Mode().IsRegular() {
+		return nil, errors.New("not a plain file")
+	}
 	data, err := io.ReadAll(io.LimitReader(f, fileLimit+1))
 	if err == nil && len(data) > fileLimit {
 		err = fmt.Errorf("more than %d bytes", fileLimit)

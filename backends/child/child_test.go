@@ -124,6 +124,21 @@ func TestMemoryIsLimited(t *testing.T) {
 	}
 }
 
+// Only plain files are read: no pipe keeps the reader, no link leads out of the private directory.
+func TestOnlyPlainFilesAreRead(t *testing.T) {
+	secret := filepath.Join(t.TempDir(), "secret")
+	if err := os.WriteFile(secret, []byte("not yours"), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	for name, text := range map[string]string{"pipe": "mkfifo pipe", "link": "ln -s '" + secret + "' link", "folder": "mkdir folder"} {
+		c := script(text)
+		c.Read = []string{name}
+		if r, err := Run(t.Context(), c); err == nil || len(r.Files) > 0 {
+			t.Errorf("%s: read %q, %v", name, r.Files, err)
+		}
+	}
+}
+
 func TestMissingProgram(t *testing.T) {
 	if _, err := Run(t.Context(), Command{Path: "/nonexistent/solver"}); !errors.Is(err, ErrNotRun) {
 		t.Errorf("error %v", err)

@@ -20,4 +20,9 @@ func engine() *bridgetest.Engine {
 
 func TestLawsOfBridgesInExecution(t *testing.T) { bridgetest.Run(t, bridges.All(), engine()) }
 
-func TestMutantsOfBridgesAreCaught(t *testing.T) { bridgetest.TryMutants(t, engine()) }
+func TestMutantsOfBridgesAreCaught(t *testing.T) {
+	if testing.Short() {
+		t.Skip("hundreds of mutants take long")
+	}
+	bridgetest.TryMutants(t, engine())
+}

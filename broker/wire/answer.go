@@ -106,12 +106,12 @@ func pointFromProto(m *model.Model, p []*towpathv1.BlockValues) (*model.Point, e
 	}
 	out := &model.Point{}
 	for k, b := range p {
-		v, err := numbersFromProto(b.GetEntries(), fmt.Sprintf("values[%d]", k), titled("block", k, b.GetName()))
+		v, err := numbersFromProto(b.GetEntries(), fmt.Sprintf("values[%d]", k), model.Title("block", k, b.GetName()))
 		if err != nil {
 			return nil, err
 		}
 		if n := m.Blocks[k].Entries(); len(v) != n {
-			return nil, fmt.Errorf("the answer has %d numbers for %s, which has %d", len(v), titled("block", k, b.GetName()), n)
+			return nil, fmt.Errorf("the answer has %d numbers for %s, which has %d", len(v), model.Title("block", k, b.GetName()), n)
 		}
 		out.Values = append(out.Values, v)
 	}
@@ -124,12 +124,12 @@ func multipliersFromProto(m *model.Model, p *towpathv1.Multipliers) (*model.Mult
 	}
 	y := &model.Multipliers{Bounds: make([][]complex128, len(m.Blocks))}
 	for k, c := range p.GetConstraints() {
-		v, err := numbersFromProto(c.GetValues(), fmt.Sprintf("multipliers.constraints[%d]", k), titled("constraint", k, c.GetName()))
+		v, err := numbersFromProto(c.GetValues(), fmt.Sprintf("multipliers.constraints[%d]", k), model.Title("constraint", k, c.GetName()))
 		if err != nil {
 			return nil, err
 		}
 		if n := m.Constraints[k].Map.Rows(); len(v) != n {
-			return nil, fmt.Errorf("the answer has %d multipliers for %s, which has %d rows", len(v), titled("constraint", k, c.GetName()), n)
+			return nil, fmt.Errorf("the answer has %d multipliers for %s, which has %d rows", len(v), model.Title("constraint", k, c.GetName()), n)
 		}
 		y.Constraints = append(y.Constraints, v)
 	}
@@ -139,14 +139,14 @@ func multipliersFromProto(m *model.Model, p *towpathv1.Multipliers) (*model.Mult
 			continue
 		}
 		if len(left) == 0 {
-			return nil, fmt.Errorf("the answer has no multipliers for the bounds of %s", titled("block", k, m.Blocks[k].Name))
+			return nil, fmt.Errorf("the answer has no multipliers for the bounds of %s", model.Title("block", k, m.Blocks[k].Name))
 		}
-		v, err := numbersFromProto(left[0].GetEntries(), "multipliers.bounds", titled("block", k, m.Blocks[k].Name))
+		v, err := numbersFromProto(left[0].GetEntries(), "multipliers.bounds", model.Title("block", k, m.Blocks[k].Name))
 		if err != nil {
 			return nil, err
 		}
 		if len(v) != m.Blocks[k].Entries() {
-			return nil, fmt.Errorf("the answer has %d multipliers for the bounds of %s", len(v), titled("block", k, m.Blocks[k].Name))
+			return nil, fmt.Errorf("the answer has %d multipliers for the bounds of %s", len(v), model.Title("block", k, m.Blocks[k].Name))
 		}
 		y.Bounds[k], left = v, left[1:]
 	}

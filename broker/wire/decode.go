@@ -54,13 +54,6 @@ func (d *decoder) spend(n int) bool {
 	return true
 }
 
-func titled(what string, k int, name string) string {
-	if name == "" {
-		return fmt.Sprintf("%s %d", what, k)
-	}
-	return fmt.Sprintf("%s %d '%s'", what, k, name)
-}
-
 func fieldFromProto(f towpathv1.Field, path, place string) (model.Field, error) {
 	if f < towpathv1.Field_FIELD_REAL || f > towpathv1.Field_FIELD_HERMITIAN {
 		return 0, fault(path+".field", place, "its field is missing or unknown", "use FIELD_REAL, FIELD_COMPLEX, FIELD_SYMMETRIC or FIELD_HERMITIAN")
@@ -84,7 +77,7 @@ func dimension(n uint64, path, place string) (int, error) {
 }
 
 func (d *decoder) block(k int, p *towpathv1.Block) error {
-	path, place := fmt.Sprintf("blocks[%d]", k), titled("block", k, p.GetName())
+	path, place := fmt.Sprintf("blocks[%d]", k), model.Title("block", k, p.GetName())
 	field, err := fieldFromProto(p.GetField(), path, place)
 	if err != nil {
 		return err
@@ -210,7 +203,7 @@ func (d *decoder) objective(p *towpathv1.Objective) error {
 }
 
 func (d *decoder) constraint(k int, p *towpathv1.Constraint) error {
-	path, place := fmt.Sprintf("constraints[%d]", k), titled("constraint", k, p.GetName())
+	path, place := fmt.Sprintf("constraints[%d]", k), model.Title("constraint", k, p.GetName())
 	field, err := fieldFromProto(p.GetField(), path, place)
 	if err != nil {
 		return err

@@ -27,7 +27,7 @@ func (d *decoder) term(t *towpathv1.Term, rows, order int, path, place string) (
 		return out, err
 	}
 	b := &d.m.Blocks[k]
-	at, upper, err := entryOf(t.GetEntry(), b, titled("block", k, b.Name), path+".entry", place)
+	at, upper, err := entryOf(t.GetEntry(), b, model.Title("block", k, b.Name), path+".entry", place)
 	if err != nil {
 		return out, err
 	}

@@ -89,6 +89,7 @@ func durationText(d *durationpb.Duration) string {
 const (
 	shownEntries     = 6
 	shownConstraints = 8
+	shownBlocks      = 12
 )
 
 func writeNumbers(w io.Writer, a *towpathv1.Answer, s show) error {
@@ -129,6 +130,10 @@ func writeMultipliers(w io.Writer, m *towpathv1.Multipliers, all bool, option st
 	if len(m.GetBounds()) > 0 {
 		fmt.Fprintln(t, "  of bounds")
 		for k, b := range m.GetBounds() {
+			if !all && k == shownConstraints {
+				fmt.Fprintf(t, "  and %d more blocks (%s shows them)\n", len(m.GetBounds())-k, option)
+				break
+			}
 			if err := writeList(t, b.GetName(), "block", k, b.GetField(), b.GetRows(), b.GetCols(), b.GetEntries(), all, option); err != nil {
 				return err
 			}
@@ -140,6 +145,10 @@ func writeMultipliers(w io.Writer, m *towpathv1.Multipliers, all bool, option st
 func writeBlocks(w io.Writer, blocks []*towpathv1.BlockValues, all bool, option string) error {
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	for k, b := range blocks {
+		if !all && k == shownBlocks {
+			fmt.Fprintf(t, "  and %d more blocks (%s shows them)\n", len(blocks)-k, option)
+			break
+		}
 		if err := writeList(t, b.GetName(), "block", k, b.GetField(), b.GetRows(), b.GetCols(), b.GetEntries(), all, option); err != nil {
 			return err
 		}

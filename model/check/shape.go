@@ -71,14 +71,7 @@ func misfit(v []complex128, n int, isReal func(int) bool) string {
 	return ""
 }
 
-func titled(what string, k int, name string) string {
-	if name == "" {
-		return fmt.Sprintf("%s %d", what, k)
-	}
-	return fmt.Sprintf("%s %d '%s'", what, k, name)
-}
-
-func blockTitle(m *model.Model, b int) string { return titled("block", b, m.Blocks[b].Name) }
+func blockTitle(m *model.Model, b int) string { return model.Title("block", b, m.Blocks[b].Name) }
 func constraintTitle(m *model.Model, k int) string {
-	return titled("constraint", k, m.Constraints[k].Name)
+	return model.Title("constraint", k, m.Constraints[k].Name)
 }
