@@ -11,7 +11,8 @@ import (
 	towpathv1 "towpath/proto/towpath/v1"
 )
 
-// Every published instance goes down every route: natively, through the real-only sheet, and to both sides of csdp.
+// Every published instance goes down every route: natively, through the real-only sheet, to both sides of csdp, and where the
+// broker chooses to send it.
 // Sources are with the instances.
 func TestInstances(t *testing.T) {
 	cases, err := modeltest.Cases()
@@ -23,6 +24,7 @@ func TestInstances(t *testing.T) {
 		{"native", &towpathv1.JobOptions{Sheet: interior.ComplexSheet}, exactWay},
 		{"real only", &towpathv1.JobOptions{Sheet: interior.RealSheet}, exactWay},
 	}
+	ways = append(ways, way{"chosen", &towpathv1.JobOptions{NeedMultipliers: true, NeedCertificates: true}, csdpWay})
 	if s.csdp {
 		ways = append(ways, way{"csdp", &towpathv1.JobOptions{Backends: []string{"csdp"}}, csdpWay})
 	}
