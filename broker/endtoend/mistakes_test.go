@@ -44,6 +44,9 @@ func mistakes() []mistake {
 // without effect (the conjugate of a real matrix); but no answer that passes examination may be wrong, and of each mistake
 // at least a known number of instances must be noticed.
 func TestMistakesAreCaught(t *testing.T) {
+	if testing.Short() {
+		t.Skip("takes long")
+	}
 	cases, err := modeltest.Cases()
 	if err != nil {
 		t.Fatal(err)

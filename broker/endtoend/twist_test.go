@@ -15,6 +15,9 @@ import (
 // Hermitian matrix map by a unitary congruence. Values stay; the multiplier of an equality turns by the phase, that of a map
 // becomes U Y U^H. Lowered, a turned equality is two rows that each mix real and imaginary part, and a dense U leaves no zero.
 func TestTwists(t *testing.T) {
+	if testing.Short() {
+		t.Skip("takes long")
+	}
 	cases, err := modeltest.Cases()
 	if err != nil {
 		t.Fatal(err)

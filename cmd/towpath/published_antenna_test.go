@@ -53,6 +53,9 @@ func (a *antenna) model() *model.Model {
 // linear programs, 1999, from memory), natively and lowered. The printed value is that of minus t and differs from the
 // optimum in the sixth digit.
 func TestPublishedAntenna(t *testing.T) {
+	if testing.Short() {
+		t.Skip("takes long")
+	}
 	dir := os.Getenv("TOWPATH_CHECK_DATA")
 	if dir == "" {
 		t.Skip("TOWPATH_CHECK_DATA is not set: the published antenna problem is not tested")
