@@ -8,7 +8,7 @@ import (
 	"testing"
 )
 
-// sizes around the corners; nothing is blocked yet.
+// sizes around the corners.
 var sizes = []int{1, 2, 3, 4, 7, 16, 33, 64}
 
 func random(r *rand.Rand, n int) []complex128 {

@@ -1,11 +1,11 @@
-// Package dense has the dense Hermitian kernels of the interior-point engine in portable Go. Matrices are square and
-// row-major: order n in n*n numbers. It is small on purpose, so that faster kernels can take its place.
+// Package dense has the dense Hermitian kernels of the interior-point engine. Matrices are square and row-major: order n in
+// n*n numbers. Products run on assembly kernels where the processor has them, everything else in plain Go.
 package dense
 
 import "math"
 
-// Mul sets c = a b. c must not be a or b.
-func Mul(n int, c, a, b []complex128) {
+// mulGo is Mul in plain Go.
+func mulGo(n int, c, a, b []complex128) {
 	clear(c[:n*n])
 	for i := range n {
 		ci := c[i*n : i*n+n]
@@ -21,8 +21,8 @@ func Mul(n int, c, a, b []complex128) {
 	}
 }
 
-// MulH sets c = a b^H. c must not be a or b.
-func MulH(n int, c, a, b []complex128) {
+// mulHGo is MulH in plain Go.
+func mulHGo(n int, c, a, b []complex128) {
 	for i := range n {
 		ai := a[i*n : i*n+n]
 		for j := range n {
