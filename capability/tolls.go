@@ -16,7 +16,8 @@ type Rates struct {
 	Matrix float64
 	// ComplexCore says that symmetric matrices are worked on as complex ones.
 	ComplexCore bool
-	// Scalar counts the flops per iteration of one real coordinate of a nonneg or lorentz cone.
+	// Scalar counts the flops per iteration of one real coordinate of a nonneg or lorentz cone, and four times those of a
+	// number of a matrix beside Matrix: memory, bookkeeping, loops too short to be fast.
 	Scalar float64
 	// Product counts flops per unknown and cubed order of the largest matrix: how often a dense coefficient matrix is
 	// multiplied. Where coefficients are sparse, it is small.
@@ -65,7 +66,8 @@ func InteriorToll(l Load, r Rates) Toll {
 			coordinates += count * realCoordinates(d.Kind, n)
 		}
 	}
-	work := r.Matrix*cubes + r.Scalar*coordinates +
+	const matrixEntry = 0.25 // of what a coordinate of a lorentz cone costs beside its products
+	work := r.Matrix*cubes + r.Scalar*(coordinates+matrixEntry*squares) +
 		unknowns*(r.Product*largest+r.Entry*(squares+coordinates)) +
 		r.Pair*unknowns*unknowns + choleskyFlops*unknowns*unknowns*unknowns
 	return Toll{

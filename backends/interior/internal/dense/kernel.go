@@ -21,3 +21,6 @@ var fastest = func() *kernel {
 
 // leastOrder is the order from which packing pays.
 const leastOrder = 8
+
+// Accelerated reports whether products run on an assembly kernel.
+func Accelerated() bool { return fastest != nil }
