@@ -16,8 +16,8 @@ type Rates struct {
 	Matrix float64
 	// ComplexCore says that symmetric matrices are worked on as complex ones.
 	ComplexCore bool
-	// Scalar counts the flops per iteration of one real coordinate of a nonneg or lorentz cone, and four times those of a
-	// number of a matrix beside Matrix: memory, bookkeeping, loops too short to be fast.
+	// Scalar counts the flops per iteration of one real coordinate of a cone beside those of Matrix: memory, bookkeeping, loops
+	// too short to be fast.
 	Scalar float64
 	// Product counts flops per unknown and cubed order of the largest matrix: how often a dense coefficient matrix is
 	// multiplied. Where coefficients are sparse, it is small.
@@ -27,6 +27,8 @@ type Rates struct {
 	Entry float64
 	// Pair counts flops per pair of unknowns, beside the factorisation.
 	Pair float64
+	// Factor counts flops per cube of the unknowns in the factorisation; 0 means a third, that of a dense one.
+	Factor float64
 
 	Bytes    float64 // for anything at all
 	Copies   float64 // of the reduced system
@@ -66,10 +68,14 @@ func InteriorToll(l Load, r Rates) Toll {
 			coordinates += count * realCoordinates(d.Kind, n)
 		}
 	}
-	const matrixEntry = 0.25 // of what a coordinate of a lorentz cone costs beside its products
+	const matrixEntry = 0.5 // a Hermitian matrix has as many real coordinates as half its numbers
+	factor := r.Factor
+	if factor == 0 {
+		factor = choleskyFlops
+	}
 	work := r.Matrix*cubes + r.Scalar*(coordinates+matrixEntry*squares) +
 		unknowns*(r.Product*largest+r.Entry*(squares+coordinates)) +
-		r.Pair*unknowns*unknowns + choleskyFlops*unknowns*unknowns*unknowns
+		r.Pair*unknowns*unknowns + factor*unknowns*unknowns*unknowns
 	return Toll{
 		Seconds: r.Start + r.Coefficient*(squares+coordinates+unknowns) + r.Iterations*work/r.Flops,
 		Bytes:   r.Bytes + bytesPerReal*(r.Copies*unknowns*unknowns+r.Matrices*(squares+coordinates)),

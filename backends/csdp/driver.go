@@ -82,7 +82,7 @@ func (d *Driver) Sheets() []capability.Sheet {
 // a factor of 3.6 of what was measured (theta2 0.62 s predicted, 0.42 measured; arch0 0.89, 1.15; control2 0.014, 0.051).
 var rates = capability.Rates{
 	Start: 10e-3, Coefficient: 4e-7, Iterations: 16, Flops: 8e9,
-	Matrix: 60, Scalar: 240, Product: 0, Entry: 40, Pair: 10,
+	Matrix: 60, Scalar: 120, Product: 0, Entry: 40, Pair: 10,
 	Bytes: 6e6, Copies: 1, Matrices: 12,
 }
 

@@ -125,6 +125,7 @@ func (f *form) scale(s *state) (ok bool) {
 // leaves the direction inexact it tries the others and takes the one after which the least is left of the residuals.
 func (v *newton) firmest(s *state, r *residuals) (best *direction, step float64) {
 	least, chosen := math.Inf(1), v.firm
+	v.k.form()
 	for k := range firmness {
 		level := (v.firm + k) % len(firmness)
 		v.k.regularity = firmness[level]

@@ -109,7 +109,7 @@ func (s *kkt) gramPSD(it *item, c *psd, sign float64) {
 }
 
 func (s *kkt) addPair(k, l int, v float64) {
-	s.k[max(k, l)*s.n+min(k, l)] += v
+	s.add(max(k, l), min(k, l), v)
 }
 
 // pairing is <B, W A W>, entry by entry.

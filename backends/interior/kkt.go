@@ -1,35 +1,38 @@
 package interior
 
-import (
-	"math"
-
-	"gonum.org/v1/gonum/blas"
-	"gonum.org/v1/gonum/blas/blas64"
-)
+import "math"
 
 // kkt is the reduced system
 //
 //	[ A H A'   B          ]
 //	[ B'      -F' H^-1 F  ]  over (y, u),
 //
-// made quasi-definite by a small regularisation and factored as L D L' without pivoting (Vanderbei 1995, from memory);
-// solutions are refined against the system as it was. Dense: n^2 numbers twice.
+// made quasi-definite by a small regularisation and factored as L D L' without pivoting (R. Vanderbei 1995, from memory);
+// solutions are refined against the system as it was.
 type kkt struct {
 	f *form
 	n int
-	k []float64 // lower triangle by rows, equilibrated
-	l []float64
-	d []float64
+	system
 	e []float64 // equilibration: the system is E K E
 
 	patterns map[*item]*pattern // of psd items, once they are known
 	regularity
 }
 
+// system is a symmetric matrix K of which the lower triangle is kept, and its factor L D L'.
+type system interface {
+	clear()
+	add(i, j int, v float64)            // i >= j
+	largest(into []float64)             // the largest size of a number in every row of K
+	scale(by []float64)                 // K becomes B K B, B = diag(by)
+	factor(r regularity, rows int) bool // pivots of the first rows are positive, the others negative; false for NaN
+	backsolve(x []float64)
+	multiply(dst, x []float64) // dst = K x
+}
+
 const (
 	equilibrations = 4
 	refinements    = 3
-	panel          = 48 // columns factored at a time
 )
 
 // regularity is how firmly the equilibrated system is regularised. A pivot below floor has lost its sign and is replaced by
@@ -42,62 +45,48 @@ var firmness = []regularity{{1e-8, 1e-9, 1e-5}, {1e-10, 1e-11, 1e-6}, {1e-13, 1e
 
 func newKKT(f *form) *kkt {
 	n := f.rows + f.free
-	return &kkt{f: f, n: n, k: make([]float64, n*n), l: make([]float64, n*n), d: make([]float64, n), e: make([]float64, n), patterns: map[*item]*pattern{}, regularity: firmness[0]}
+	s := &kkt{f: f, n: n, e: make([]float64, n), patterns: map[*item]*pattern{}, regularity: firmness[0]}
+	if sparse := newSparseSystem(f); sparse != nil {
+		s.system = sparse
+	} else {
+		s.system = newDenseSystem(n)
+	}
+	return s
 }
 
-// build forms the matrix at the present scalings and factors it; ok is false when it holds NaN.
-func (s *kkt) build() (ok bool) {
-	n := s.n
-	clear(s.k)
+// form fills the matrix at the present scalings.
+func (s *kkt) form() {
+	s.clear()
 	for r := range s.f.bu {
 		row := &s.f.bu[r]
 		for i, c := range row.at {
-			s.k[(s.f.rows+c)*n+r] += row.v[i]
+			s.add(s.f.rows+c, r, row.v[i])
 		}
 	}
 	for _, it := range s.f.items {
 		s.gram(it)
 	}
 	s.equilibrate()
-	for i := range n {
-		copy(s.l[i*n:i*n+i+1], s.k[i*n:i*n+i+1])
-		delta := s.shift
-		if i >= s.f.rows {
-			delta = -delta
-		}
-		s.l[i*n+i] += delta
-	}
-	return s.factor()
 }
 
 // equilibrate scales rows and columns to largest numbers near one (D. Ruiz 2001, from memory): near the end the scalings of
 // the cones span twenty orders of magnitude, and what is small of one row is not small of another.
 func (s *kkt) equilibrate() {
-	n := s.n
 	for i := range s.e {
 		s.e[i] = 1
 	}
-	largest := make([]float64, n)
+	by := make([]float64, s.n)
 	for range equilibrations {
-		clear(largest)
-		for i := range n {
-			for j, v := range s.k[i*n : i*n+i+1] {
-				v = math.Abs(v)
-				largest[i], largest[j] = max(largest[i], v), max(largest[j], v)
-			}
-		}
-		for i, v := range largest {
-			largest[i] = 1
+		clear(by)
+		s.largest(by)
+		for i, v := range by {
+			by[i] = 1
 			if v > 0 && !math.IsInf(v, 0) {
-				largest[i] = math.Exp2(-math.Round(math.Log2(v) / 2)) // powers of two round nothing
+				by[i] = math.Exp2(-math.Round(math.Log2(v) / 2)) // powers of two round nothing
 			}
-			s.e[i] *= largest[i]
+			s.e[i] *= by[i]
 		}
-		for i := range n {
-			for j := range s.k[i*n : i*n+i+1] {
-				s.k[i*n+j] *= largest[i] * largest[j]
-			}
-		}
+		s.scale(by)
 	}
 }
 
@@ -121,7 +110,7 @@ func (s *kkt) gram(it *item) {
 		it.data[i].addTo(x, 1)
 		it.apply(h, x, !it.isBlock)
 		for j, l := range it.keys[:i+1] {
-			s.k[k*s.n+l] += sign * it.data[j].dot(h)
+			s.add(k, l, sign*it.data[j].dot(h))
 		}
 	}
 }
@@ -146,95 +135,8 @@ func (s *kkt) gramOrthant(it *item, o *orthant, sign float64) {
 		}
 		for i, x := range list {
 			for _, y := range list[:i+1] {
-				s.k[x.key*s.n+y.key] += sign * h * x.v * y.v
+				s.add(x.key, y.key, sign*h*x.v*y.v)
 			}
-		}
-	}
-}
-
-// factor is a panelled L D L'.
-func (s *kkt) factor() bool {
-	n, l := s.n, s.l
-	w := make([]float64, n*panel)
-	for j0 := 0; j0 < n; j0 += panel {
-		j1 := min(j0+panel, n)
-		if !s.factorPanel(j0, j1) {
-			return false
-		}
-		m, kb := n-j1, j1-j0
-		if m == 0 {
-			break
-		}
-		for i := range m {
-			for k := range kb {
-				w[i*kb+k] = l[(j1+i)*n+j0+k] * s.d[j0+k]
-			}
-		}
-		const strip = 128
-		for i0 := 0; i0 < m; i0 += strip {
-			i1 := min(i0+strip, m)
-			blas64.Gemm(blas.NoTrans, blas.Trans, -1,
-				blas64.General{Rows: i1 - i0, Cols: kb, Stride: kb, Data: w[i0*kb : i1*kb]},
-				blas64.General{Rows: i1, Cols: kb, Stride: n, Data: l[j1*n+j0:]}, 1,
-				blas64.General{Rows: i1 - i0, Cols: i1, Stride: n, Data: l[(j1+i0)*n+j1:]})
-		}
-	}
-	return true
-}
-
-func (s *kkt) factorPanel(j0, j1 int) bool {
-	n, l := s.n, s.l
-	v := make([]float64, j1-j0)
-	for j := j0; j < j1; j++ {
-		lj := l[j*n+j0 : j*n+j]
-		for k, x := range lj {
-			v[k] = x * s.d[j0+k]
-		}
-		d := l[j*n+j] - dot(lj, v)
-		sign := 1.0
-		if j >= s.f.rows {
-			sign = -1
-		}
-		if math.IsNaN(d) {
-			return false
-		}
-		if !(d*sign > s.floor) {
-			d = sign * s.repair
-		}
-		s.d[j] = d
-		for i := j + 1; i < n; i++ {
-			l[i*n+j] = (l[i*n+j] - dot(v[:j-j0], l[i*n+j0:i*n+j])) / d
-		}
-	}
-	return true
-}
-
-func (s *kkt) backsolve(x []float64) {
-	n, l := s.n, s.l
-	for i := range x {
-		x[i] -= dot(l[i*n:i*n+i], x[:i])
-	}
-	for i := range x {
-		x[i] /= s.d[i]
-	}
-	for i := n - 1; i >= 0; i-- {
-		t := x[i]
-		for k, v := range l[i*n : i*n+i] {
-			x[k] -= v * t
-		}
-	}
-}
-
-// multiply sets dst = K x.
-func (s *kkt) multiply(dst, x []float64) {
-	n := s.n
-	clear(dst)
-	for i := range n {
-		row := s.k[i*n : i*n+i]
-		dst[i] += dot(row, x[:i]) + s.k[i*n+i]*x[i]
-		t := x[i]
-		for k, v := range row {
-			dst[k] += v * t
 		}
 	}
 }

@@ -30,11 +30,11 @@ type side struct {
 	gap, kappa float64     // b'dy - c_u'du - c'dP - f'dQ - dkappa;  kappa dtau + tau dkappa
 }
 
-// prepare factors the reduced system at the state's scalings and finds the response to tau.
+// prepare factors the reduced system, which has been formed at the state's scalings, and finds the response to tau.
 func (v *newton) prepare(s *state) (ok bool) {
 	f := v.f
 	v.s = s
-	if !v.k.build() {
+	if !v.k.factor(v.k.regularity, f.rows) {
 		return false
 	}
 	g := make([]float64, f.rows+f.free)
