@@ -7,9 +7,8 @@ type bitset []uint64
 
 func newBitset(n int) bitset { return make(bitset, (n+63)/64) }
 
-func (b bitset) add(i int)      { b[i/64] |= 1 << (i % 64) }
-func (b bitset) remove(i int)   { b[i/64] &^= 1 << (i % 64) }
-func (b bitset) has(i int) bool { return b[i/64]>>(i%64)&1 == 1 }
+func (b bitset) add(i int)    { b[i/64] |= 1 << (i % 64) }
+func (b bitset) remove(i int) { b[i/64] &^= 1 << (i % 64) }
 
 func (b bitset) join(o bitset) {
 	for k, w := range o {
