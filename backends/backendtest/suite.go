@@ -187,7 +187,7 @@ func (s *sheet) random(t *testing.T) {
 	tally := tally{}
 	for seed := range uint64(s.expect.Seeds) {
 		for _, outcome := range []model.Outcome{model.Optimal, model.Infeasible, model.Unbounded} {
-			r := modeltest.Recipe{Seed: seed, Outcome: outcome, Linear: seed%2 == 0, Spread: s.expect.Spread * float64(seed%4) / 3}
+			r := modeltest.Recipe{Seed: seed, Outcome: outcome, Linear: seed%2 == 0, Degenerate: seed%5 == 0, Spread: s.expect.Spread * float64(seed%4) / 3}
 			m, known := r.Make()
 			x, ok := s.cross(t, m)
 			if !ok {
