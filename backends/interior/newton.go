@@ -91,12 +91,14 @@ func (v *newton) solve(r *residuals, eta float64, pair [][]float64, kappa float6
 			break
 		}
 		step := v.once(left)
-		effect := left.minus(v.left(left, step), 1)
+		effect := v.left(left, step)
+		effect.times(-1)
+		effect.add(1, left)
 		for range 2 { // once is not enough when steps are nearly dependent
 			for i := range steps {
 				b := effect.dot(effects[i])
 				step.add(-b, steps[i])
-				effect = effect.minus(effects[i], b)
+				effect.add(-b, effects[i])
 			}
 		}
 		n := effect.size()
@@ -104,10 +106,10 @@ func (v *newton) solve(r *residuals, eta float64, pair [][]float64, kappa float6
 			break
 		}
 		step.times(1 / n)
-		effect = effect.times(1 / n)
+		effect.times(1 / n)
 		a := left.dot(effect)
 		d.add(a, step)
-		left = left.minus(effect, a)
+		left.add(-a, effect)
 		steps, effects = append(steps, step), append(effects, effect)
 		if !(left.size() < 0.9*before) {
 			break
@@ -142,54 +144,58 @@ func (e *side) dot(o *side) float64 {
 	return t
 }
 
-// minus returns e - a o.
-func (e *side) minus(o *side, a float64) *side {
-	out := &side{x: combined(e.x, o.x, -a), gap: e.gap - a*o.gap, kappa: e.kappa - a*o.kappa}
+// add adds a o to e.
+func (e *side) add(a float64, o *side) {
+	axpyReal(e.x, a, o.x)
+	e.gap += a * o.gap
+	e.kappa += a * o.kappa
 	for i := range e.item {
-		out.item = append(out.item, combined(e.item[i], o.item[i], -a))
-		out.pair = append(out.pair, combined(e.pair[i], o.pair[i], -a))
+		axpyReal(e.item[i], a, o.item[i])
+		axpyReal(e.pair[i], a, o.pair[i])
 	}
-	return out
 }
 
-func (e *side) times(a float64) *side {
-	out := &side{x: scaled(e.x, a), gap: a * e.gap, kappa: a * e.kappa}
+func (e *side) times(a float64) {
+	scale(e.x, a)
+	e.gap *= a
+	e.kappa *= a
 	for i := range e.item {
-		out.item, out.pair = append(out.item, scaled(e.item[i], a)), append(out.pair, scaled(e.pair[i], a))
+		scale(e.item[i], a)
+		scale(e.pair[i], a)
 	}
-	return out
-}
-
-func combined(x, y []float64, a float64) []float64 {
-	out := make([]float64, len(x))
-	for i := range out {
-		out[i] = x[i] + a*y[i]
-	}
-	return out
 }
 
 // add adds a c to the direction.
 func (d *direction) add(a float64, c *direction) {
-	into := func(x, y []float64) {
-		for i := range x {
-			x[i] += a * y[i]
-		}
-	}
-	into(d.x, c.x)
+	axpyReal(d.x, a, c.x)
 	d.tau += a * c.tau
 	d.kappa += a * c.kappa
 	for i := range d.p {
-		into(d.p[i], c.p[i])
-		into(d.q[i], c.q[i])
+		axpyReal(d.p[i], a, c.p[i])
+		axpyReal(d.q[i], a, c.q[i])
 	}
 }
 
 func (d *direction) times(a float64) {
-	d.x = scaled(d.x, a)
+	scale(d.x, a)
 	d.tau *= a
 	d.kappa *= a
 	for i := range d.p {
-		d.p[i], d.q[i] = scaled(d.p[i], a), scaled(d.q[i], a)
+		scale(d.p[i], a)
+		scale(d.q[i], a)
+	}
+}
+
+// axpyReal adds a x to y.
+func axpyReal(y []float64, a float64, x []float64) {
+	for i, v := range x {
+		y[i] += a * v
+	}
+}
+
+func scale(x []float64, a float64) {
+	for i := range x {
+		x[i] *= a
 	}
 }
 
