@@ -3,7 +3,7 @@ package interior
 import (
 	"slices"
 
-	"towpath/backends/interior/internal/dense"
+	"towpath/backends/internal/dense"
 )
 
 // triplet is an entry of a Hermitian matrix in its lower triangle, row i >= column j.

@@ -3,7 +3,7 @@ package interior
 import (
 	"math"
 
-	"towpath/backends/interior/internal/dense"
+	"towpath/backends/internal/dense"
 )
 
 // psd is the cone of positive semidefinite matrices, complex to the core: Hermitian matrices have n^2 coordinates, real

@@ -1,7 +1,7 @@
 package interior
 
 import (
-	"towpath/backends/interior/internal/dense"
+	"towpath/backends/internal/dense"
 	"towpath/capability"
 )
 
